@@ -1,0 +1,59 @@
+import path from 'node:path'
+import { z } from 'zod'
+
+const port = (fallback: number) => z.coerce.number().int().min(1).max(65535).default(fallback)
+const flag = z
+  .enum(['0', '1'])
+  .default('0')
+  .transform((value) => value === '1')
+
+const schema = z.object({
+  NODE_ENV: z.enum(['development', 'production', 'test']).default('development'),
+  EBBMARK_DATA_DIR: z
+    .string()
+    .default('.data')
+    .transform((dir) => path.resolve(dir)),
+  DATABASE_URL: z.string().url(),
+  DATABASE_OWNER_URL: z.string().url().optional(),
+  DATABASE_DIRECT_URL: z.string().url().optional(),
+  HOST: z.string().default('127.0.0.1'),
+  PORT: port(3000),
+  MQTT_HOST: z.string().default('127.0.0.1'),
+  MQTT_PORT: port(1883),
+  SMTP_HOST: z.string().default('127.0.0.1'),
+  SMTP_PORT: port(1025),
+  SMTP_USER: z.string().optional(),
+  SMTP_PASSWORD: z.string().optional(),
+  MAIL_FROM: z.string().default('Ebbmark <digest@ebbmark.example>'),
+  PUBLIC_URL: z.string().url().optional(),
+  NEXTAUTH_SECRET: z.string().min(32).optional(),
+  EBBMARK_DEMO: flag,
+  LOG_LEVEL: z.enum(['trace', 'debug', 'info', 'warn', 'error', 'fatal', 'silent']).default('info'),
+})
+
+export type Env = z.infer<typeof schema>
+
+/** Parses an environment; throws one error that names every variable at fault and what was expected. */
+export function parseEnv(source: Record<string, string | undefined>): Env {
+  const given = Object.fromEntries(Object.entries(source).filter(([, value]) => value !== ''))
+  const parsed = schema.safeParse(given)
+  if (parsed.success) return parsed.data
+  const problems = parsed.error.issues.map((issue) => `  ${issue.path.join('.')}: ${issue.message}`)
+  throw new Error(
+    `The environment is not usable (.env.example explains each variable):\n${problems.join('\n')}`,
+  )
+}
+
+let cached: Env | undefined
+
+/** The environment of this process, parsed at first use (a build has none). The one place that reads process.env. */
+export function env(): Env {
+  // biome-ignore lint/style/noProcessEnv: the one place that reads it
+  cached ??= parseEnv(process.env)
+  return cached
+}
+
+/** Where people reach the web application: PUBLIC_URL, else the loopback address. */
+export function publicUrl(): string {
+  return env().PUBLIC_URL ?? `http://${env().HOST}:${env().PORT}`
+}
