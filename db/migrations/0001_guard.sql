@@ -52,16 +52,16 @@ DECLARE
   month_end timestamptz := (date_trunc('month', moment AT TIME ZONE 'UTC') + interval '1 month') AT TIME ZONE 'UTC';
   partition text := 'readings_' || to_char(moment AT TIME ZONE 'UTC', 'YYYY_MM');
 BEGIN
-  IF to_regclass(partition) IS NOT NULL AND EXISTS (SELECT FROM pg_inherits WHERE inhrelid = to_regclass(partition)) THEN
+  IF EXISTS (SELECT FROM pg_inherits i JOIN pg_class c ON c.oid = i.inhrelid WHERE i.inhparent = 'readings'::regclass AND c.relname = partition) THEN
     RETURN;
   END IF;
   PERFORM pg_advisory_xact_lock(hashtext('ebbmark readings month'));
-  IF to_regclass(partition) IS NULL THEN
-    EXECUTE format('CREATE TABLE %I (LIKE readings INCLUDING DEFAULTS INCLUDING CONSTRAINTS)', partition);
+  -- read from the catalogue, not to_regclass: a cached "no such table" would outlive the wait for the lock
+  IF EXISTS (SELECT FROM pg_inherits i JOIN pg_class c ON c.oid = i.inhrelid WHERE i.inhparent = 'readings'::regclass AND c.relname = partition) THEN
+    RETURN;
   END IF;
-  IF NOT EXISTS (SELECT FROM pg_inherits WHERE inhrelid = to_regclass(partition)) THEN
-    EXECUTE format('ALTER TABLE readings ATTACH PARTITION %I FOR VALUES FROM (%L) TO (%L)', partition, month_start, month_end);
-  END IF;
+  EXECUTE format('CREATE TABLE %I (LIKE readings INCLUDING DEFAULTS INCLUDING CONSTRAINTS)', partition);
+  EXECUTE format('ALTER TABLE readings ATTACH PARTITION %I FOR VALUES FROM (%L) TO (%L)', partition, month_start, month_end);
 END $$;
 --> statement-breakpoint
 
