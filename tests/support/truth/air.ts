@@ -32,11 +32,11 @@ export type ZoneRecord = {
 /** Outdoor CO2 on the same grid: a level, a daily wave, and weather that wanders over hours. */
 export function outdoorAir(fromS: number, steps: number, levelPpm: number, random: Random): Float64Array {
   const co2Ppm = new Float64Array(steps)
-  const wave = random.uniform(4, 12)
+  const wave = random.uniform(3, 9)
   const phase = random.uniform(0, 2 * Math.PI)
   const keep = Math.exp(-STEP_S / 14_400)
-  const kick = 5 * Math.sqrt(1 - keep * keep)
-  let weather = random.normal(0, 5)
+  const kick = 4 * Math.sqrt(1 - keep * keep)
+  let weather = random.normal(0, 4)
   for (let i = 0; i < steps; i++) {
     weather = weather * keep + kick * random.normal(0, 1)
     co2Ppm[i] = levelPpm + wave * Math.sin((2 * Math.PI * (fromS + i * STEP_S)) / 86_400 + phase) + weather
@@ -98,13 +98,24 @@ function wander(rate: Float64Array, sd: number, correlationS: number, random: Ra
  * Integrates the well-mixed mass balance of several zones, V dC/dt = 1e6 G + Q (Co − C) + Qx (Cn − C), by an exact exponential
  * per 10 s step with inputs held over the step; a neighbour's level is taken as the mean of the step's start and predicted end.
  */
-export function integrate(plans: readonly ZonePlan[], fromS: number, outdoor: Float64Array, random: Random): ZoneRecord[] {
+export function integrate(
+  plans: readonly ZonePlan[],
+  fromS: number,
+  outdoor: Float64Array,
+  random: Random,
+): ZoneRecord[] {
   const steps = outdoor.length
   const zones = plans.map((plan, z) => {
     const outdoorPerHour = knotValues(plan.outdoorRate, fromS, steps)
     wander(outdoorPerHour, plan.wander.sd, plan.wander.correlationS, random.fork(`wander ${z}`))
     const exchangePerHour = plan.exchange ? knotValues(plan.exchange.rate, fromS, steps) : null
-    return { plan, outdoorPerHour, exchangePerHour, ...sourcesOf(plan, fromS, steps), co2Ppm: new Float64Array(steps) }
+    return {
+      plan,
+      outdoorPerHour,
+      exchangePerHour,
+      ...sourcesOf(plan, fromS, steps),
+      co2Ppm: new Float64Array(steps),
+    }
   })
   const hours = STEP_S / 3600
   const now = zones.map(() => outdoor[0]! + 30)
@@ -113,7 +124,8 @@ export function integrate(plans: readonly ZonePlan[], fromS: number, outdoor: Fl
     const zone = zones[z]!
     const exchange = zone.exchangePerHour?.[i] ?? 0
     const rate = zone.outdoorPerHour[i]! + exchange
-    const level = (zone.outdoorPerHour[i]! * outdoor[i]! + exchange * neighbourPpm + zone.ppmPerHour[i]!) / rate
+    const level =
+      (zone.outdoorPerHour[i]! * outdoor[i]! + exchange * neighbourPpm + zone.ppmPerHour[i]!) / rate
     return level + (now[z]! - level) * Math.exp(-rate * hours)
   }
   for (let i = 0; i < steps; i++) {

@@ -26,7 +26,14 @@ export type TruthBuilding = {
   outdoor: Reading[] | null
 }
 
-export type Order = { className: string; seed: number; part: number; rooms: number; days: number; outdoor: boolean }
+export type Order = {
+  className: string
+  seed: number
+  part: number
+  rooms: number
+  days: number
+  outdoor: boolean
+}
 
 function firstDate(order: Order, random: Random): string {
   const kind = CLASSES[order.className]!
@@ -76,7 +83,9 @@ export function makeBuilding(order: Order): TruthBuilding {
   const kind = CLASSES[order.className]
   if (!kind) throw new Error(`no class "${order.className}"; there are ${Object.keys(CLASSES).join(', ')}`)
   const random = randomFrom(`${order.seed}/${order.className}/${order.part}/building`)
-  const zone = random.pick(kind.zones ?? ['Europe/Lisbon', 'Europe/Berlin', 'Europe/London', 'Europe/Helsinki'])
+  const zone = random.pick(
+    kind.zones ?? ['Europe/Lisbon', 'Europe/Berlin', 'Europe/London', 'Europe/Helsinki'],
+  )
   const first = firstDate(order, random)
   const dates = Array.from({ length: order.days + 1 }, (_, d) => addDays(first, d))
   const fromS = localTimeS(zone, first, 0)

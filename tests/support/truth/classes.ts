@@ -56,7 +56,10 @@ function shutOff(setting: Setting): Draft {
     knots.push({ fromS: stopS, perHour: low })
     const leaveS = stopS - (random.uniform(0.5, 1.8) / draft.ratePerHour) * HOUR_S
     draft.lastLeaveS[d] = leaveS
-    const one = draftRoom({ ...setting, dates: [date], random: random.fork(`day ${d}`) }, { rate: [1, 1.0001] })
+    const one = draftRoom(
+      { ...setting, dates: [date], random: random.fork(`day ${d}`) },
+      { rate: [1, 1.0001] },
+    )
     const scale = draft.persons / Math.max(1, one.persons)
     // the day's people, moved so that the last leaves at leaveS, in the numbers that this room holds
     const shiftS = leaveS - one.lastLeaveS[0]!
@@ -122,7 +125,12 @@ function recirculating(setting: Setting): Draft {
   const draft = draftRoom(setting, { rate: [supply, supply * 1.001], setBack: false, excess: [500, 1200] })
   const rest = draftRoom(
     { ...setting, random: random.fork('rest') },
-    { rate: [supply * fraction, supply * fraction * 1.001], volume: [1500, 4000], excess: [200, 450], setBack: false },
+    {
+      rate: [supply * fraction, supply * fraction * 1.001],
+      volume: [1500, 4000],
+      excess: [200, 450],
+      setBack: false,
+    },
   )
   draft.outdoorRate = [{ fromS: setting.fromS, perHour: supply * fraction }]
   draft.neighbour = {
@@ -144,7 +152,8 @@ function broken(setting: Setting): Draft {
     const tau = HOUR_S / draft.ratePerHour
     const startS = leaveS + random.uniform(0.1, 1.2) * tau
     const kind = random.pick(['gap', 'off', 'stuck', 'clock', 'sound'] as const)
-    if (kind === 'gap') draft.flaws.missing.push({ fromS: startS, toS: startS + random.uniform(0.2, 1) * tau })
+    if (kind === 'gap')
+      draft.flaws.missing.push({ fromS: startS, toS: startS + random.uniform(0.2, 1) * tau })
     if (kind === 'off')
       draft.flaws.missing.push({
         fromS: leaveS + random.uniform(0, 400),
@@ -168,7 +177,12 @@ function saturated(setting: Setting): Draft {
 }
 
 function verySlow(setting: Setting): Draft {
-  const draft = draftRoom(setting, { rate: [0.03, 0.1], uses: ['meeting'], volume: [60, 200], setBack: false })
+  const draft = draftRoom(setting, {
+    rate: [0.03, 0.1],
+    uses: ['meeting'],
+    volume: [60, 200],
+    setBack: false,
+  })
   const people = setting.random.integer(2, 4)
   const stays = draft.lastLeaveS.map((toS) => ({
     fromS: toS - setting.random.uniform(1.5, 4) * HOUR_S,
@@ -192,7 +206,12 @@ function neverEmpty(setting: Setting): Draft {
 function onChange(setting: Setting): Draft {
   const deadbandPpm = setting.random.pick([15, 20, 30, 50])
   const draft = draftRoom(setting, { sensor: { deadbandPpm, intervalS: 30 }, excess: [600, 1400] })
-  draft.declared.sensor = { reporting: 'on-change', deadband_ppm: deadbandPpm, accuracy_ppm: 40, accuracy_pct: 3 }
+  draft.declared.sensor = {
+    reporting: 'on-change',
+    deadband_ppm: deadbandPpm,
+    accuracy_ppm: 40,
+    accuracy_pct: 3,
+  }
   return draft
 }
 
@@ -207,12 +226,13 @@ function noisy(setting: Setting): Draft {
       resolutionPpm,
     },
   })
-  if (random.chance(0.5)) draft.declared.sensor = { resolution_ppm: Number(resolutionPpm.toFixed(2)), accuracy_ppm: 50 }
+  if (random.chance(0.5))
+    draft.declared.sensor = { resolution_ppm: Number(resolutionPpm.toFixed(2)), accuracy_ppm: 50 }
   return draft
 }
 
 export const CLASSES: Record<string, ClassOfRooms> = {
-  clean: { about: 'sound sensor, long evening', draft: (s) => draftRoom(s) },
+  clean: { about: 'sound sensor, long evening, one rate', draft: (s) => draftRoom(s, { setBack: false }) },
   noisy: { about: '12–30 ppm noise, 10 ppm or 10-bit steps', draft: noisy },
   short: { about: '0.7–1 time constant before an end', draft: short },
   cleaners: { about: 'cleaners and guards in the evening', draft: cleaned },
@@ -227,7 +247,8 @@ export const CLASSES: Record<string, ClassOfRooms> = {
   recirculating: { about: '15–40 % outdoor air in the supply', draft: recirculating },
   'very-fast': {
     about: '8–14 per hour, sampled every 5 min',
-    draft: (s) => draftRoom(s, { rate: [8, 14], intervals: [300], excess: [350, 800], uses: ['meeting', 'classroom'] }),
+    draft: (s) =>
+      draftRoom(s, { rate: [8, 14], intervals: [300], excess: [350, 800], uses: ['meeting', 'classroom'] }),
   },
   'very-slow': { about: 'below 0.1 per hour', draft: verySlow },
   'never-empty': { about: 'people day and night', draft: neverEmpty },
@@ -237,6 +258,13 @@ export const CLASSES: Record<string, ClassOfRooms> = {
     zones: ['Europe/Lisbon', 'Europe/Berlin', 'Europe/Helsinki'],
     draft: (s) => draftRoom(s, { leaveHour: [22.5, 25], rate: [0.3, 1.2], setBack: false }),
   },
-  weekend: { about: 'empty on Saturday and Sunday', startWeekday: 4, draft: (s) => draftRoom(s, { weekendEmpty: true }) },
-  sampling: { about: 'every 10 s to every 10 min', draft: (s) => draftRoom(s, { intervals: [10, 20, 30, 600, 600] }) },
+  weekend: {
+    about: 'empty on Saturday and Sunday',
+    startWeekday: 4,
+    draft: (s) => draftRoom(s, { weekendEmpty: true }),
+  },
+  sampling: {
+    about: 'every 10 s to every 10 min',
+    draft: (s) => draftRoom(s, { intervals: [10, 20, 30, 600, 600] }),
+  },
 }

@@ -33,7 +33,7 @@ export type Wish = {
   leaveHour?: [number, number]
   intervals?: number[]
   weekendEmpty?: boolean
-  /** the supply is set back late in the evening in half of the rooms unless false */
+  /** the supply is set back late in the evening in three rooms of ten unless false */
   setBack?: boolean
   volume?: [number, number]
   sensor?: Partial<SensorPlan>
@@ -61,7 +61,11 @@ function peopleOf(setting: Setting, wish: Wish, use: RoomUse, persons: number, l
 }
 
 /** Constant supply, or one set back to 10–40 % between a late hour and 06:00, the same hour every day. */
-function supplyKnots(setting: Setting, ratePerHour: number, setBack: boolean): { knots: Knot[]; stopHour: number | null } {
+function supplyKnots(
+  setting: Setting,
+  ratePerHour: number,
+  setBack: boolean,
+): { knots: Knot[]; stopHour: number | null } {
   const knots: Knot[] = [{ fromS: setting.fromS, perHour: ratePerHour }]
   if (!setBack) return { knots, stopHour: null }
   const stopHour = setting.random.integer(43, 46) / 2
@@ -101,7 +105,7 @@ export function draftRoom(setting: Setting, wish: Wish = {}): Draft {
   const excessPpm = random.uniform(...(wish.excess ?? [450, 1300]))
   const persons = Math.max(1, Math.round((excessPpm * ratePerHour * volumeM3) / 3.6e6 / 0.0048))
   const lastLeaveS = leaveTimes(setting, wish.leaveHour ?? [16.5, 19])
-  const { knots, stopHour } = supplyKnots(setting, ratePerHour, wish.setBack !== false && random.chance(0.5))
+  const { knots, stopHour } = supplyKnots(setting, ratePerHour, wish.setBack !== false && random.chance(0.3))
   const declared: Record<string, unknown> = {}
   if (random.chance(0.4)) declared.air = 'outdoor'
   if (stopHour !== null && random.chance(0.5))

@@ -118,7 +118,9 @@ function judgeOne(building: TruthBuilding, room: TruthRoom, evenings: Evening[],
     room,
     answer,
     truth,
-    evening: evenings.find((e) => overlapShare(startS, endS, e.spell.fromS - 300, e.spell.steadyToS + 300) > 0.5) ?? null,
+    evening:
+      evenings.find((e) => overlapShare(startS, endS, e.spell.fromS - 300, e.spell.steadyToS + 300) > 0.5) ??
+      null,
     error,
     covered: ends ? rate >= answer.ach_low! && rate <= answer.ach_high! : null,
     halfWidth: ends ? (answer.ach_high! - answer.ach_low!) / 2 / answer.ach! : null,
@@ -126,7 +128,9 @@ function judgeOne(building: TruthBuilding, room: TruthRoom, evenings: Evening[],
     mixed,
     falseAccept: gross && (people || mixed),
     gross,
-    noDecay: answer.quality === 'accepted' && (truth.peopleMinutes * 60 > (endS - startS) / 2 || truth.startExcessPpm < 50),
+    noDecay:
+      answer.quality === 'accepted' &&
+      (truth.peopleMinutes * 60 > (endS - startS) / 2 || truth.startExcessPpm < 50),
     nightRight: answer.night === localDate(building.zone, secondsOf(answer.start)),
     boundHolds: answer.quality === 'refused' ? null : boundHolds(answer, truth, rate),
     outdoorHolds: outdoorGiven

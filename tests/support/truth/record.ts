@@ -96,6 +96,13 @@ export function describe(truth: Truth, startS: number, endS: number): Interval {
   }
 }
 
+/** When the rate of a demand-controlled room has fallen to 60 % of what it was at minute `m`: one rate no longer speaks for it. */
+function fallenTo(truth: Truth, m: number, end: number): number {
+  let k = m
+  while (k < end && truth.outdoorPerHour[k]! > 0.6 * truth.outdoorPerHour[m]!) k++
+  return truth.fromS + k * 60
+}
+
 /** Every stretch without people of at least `leastMinutes`, cut at the given instants where the supply steps. */
 export function emptySpells(truth: Truth, supplySteps: readonly number[], leastMinutes = 10): EmptySpell[] {
   const spells: EmptySpell[] = []
@@ -110,7 +117,8 @@ export function emptySpells(truth: Truth, supplySteps: readonly number[], leastM
     if (m > 0 && end - m >= leastMinutes) {
       const fromS = truth.fromS + m * 60
       const toS = truth.fromS + end * 60
-      const steadyToS = supplySteps.find((s) => s > fromS && s < toS) ?? toS
+      const stepS = supplySteps.find((s) => s > fromS && s < toS) ?? toS
+      const steadyToS = Math.min(stepS, fallenTo(truth, m, end))
       const inside = describe(truth, fromS, steadyToS)
       spells.push({
         fromS,

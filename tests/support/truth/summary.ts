@@ -53,7 +53,8 @@ export function summarise(judgements: readonly Judgement[]): Summary {
   const figures = accepted.filter((v) => v.error !== null)
   const evening = figures.filter((v) => v.evening)
   const answerable = new Set(evenings.filter((e) => e.answerable))
-  const reached = (list: Verdict[]) => new Set(list.flatMap((v) => (v.evening && answerable.has(v.evening) ? [v.evening] : []))).size
+  const reached = (list: Verdict[]) =>
+    new Set(list.flatMap((v) => (v.evening && answerable.has(v.evening) ? [v.evening] : []))).size
   const errors = (list: Verdict[]) => list.map((v) => Math.abs(v.error!))
   const bounds = verdicts.filter((v) => v.boundHolds !== null)
   const outdoor = verdicts.filter((v) => v.outdoorHolds !== null && v.answer.quality !== 'refused')
@@ -69,11 +70,17 @@ export function summarise(judgements: readonly Judgement[]): Summary {
     medianError: quantile(errors(evening), 0.5),
     p90Error: quantile(errors(evening), 0.9),
     medianErrorAll: quantile(errors(figures), 0.5),
-    bias: quantile(evening.map((v) => v.error!), 0.5),
+    bias: quantile(
+      evening.map((v) => v.error!),
+      0.5,
+    ),
     coverage: shareTrue(figures.map((v) => v.covered)),
     coverageEvening: shareTrue(evening.map((v) => v.covered)),
     coverageDoubtful: shareTrue(doubtful.filter((v) => v.error !== null).map((v) => v.covered)),
-    medianHalfWidth: quantile(figures.flatMap((v) => (v.halfWidth === null ? [] : [v.halfWidth])), 0.5),
+    medianHalfWidth: quantile(
+      figures.flatMap((v) => (v.halfWidth === null ? [] : [v.halfWidth])),
+      0.5,
+    ),
     falseAcceptShare: share(figures.filter((v) => v.falseAccept).length, figures.length),
     grossShare: share(figures.filter((v) => v.gross).length, figures.length),
     noDecay: accepted.filter((v) => v.noDecay).length,

@@ -7,6 +7,8 @@ import { runningMedian, studentQuantile975 } from './statistics'
 /** The largest fall within two hours that counts as a drop, ppm. */
 const DROP_PPM = 150
 const LOOK_AHEAD_S = 7200
+/** how far before it the peak is looked for */
+const LOOK_BACK_S = 1800
 const LONGEST_S = 4 * 3600
 
 /** Where the last drop of the day starts: the latest reading from which the level falls by 150 ppm within two hours. */
@@ -18,7 +20,8 @@ function lastDrop(rows: readonly Reading[], smooth: readonly number[], untilS: n
       lowest = Math.min(lowest, smooth[k]!)
     if (smooth[i]! - lowest >= DROP_PPM) {
       let top = i
-      while (top > 0 && smooth[top - 1]! >= smooth[top]!) top--
+      for (let k = i; k >= 0 && rows[i]!.clockS - rows[k]!.clockS <= LOOK_BACK_S; k--)
+        if (smooth[k]! > smooth[top]!) top = k
       return top
     }
   }
@@ -52,12 +55,20 @@ function logLine(rows: readonly Reading[], background: number) {
   return { n, slope, standardError: Math.sqrt(left / (n - 2) / sxx), r2: total > 0 ? 1 - left / total : 0 }
 }
 
-function oneNight(building: TruthBuilding, roomId: string, all: readonly Reading[], date: string): Answer | null {
+function oneNight(
+  building: TruthBuilding,
+  roomId: string,
+  all: readonly Reading[],
+  date: string,
+): Answer | null {
   const fromS = localTimeS(building.zone, date, 12)
   const toS = localTimeS(building.zone, date, 31)
   const rows = all.filter((r) => r.clockS >= fromS && r.clockS < toS)
   if (rows.length < 10) return null
-  const smooth = runningMedian(rows.map((r) => r.ppm), 2)
+  const smooth = runningMedian(
+    rows.map((r) => r.ppm),
+    2,
+  )
   const start = lastDrop(rows, smooth, localTimeS(building.zone, date, 26))
   if (start < 0) return null
   const nightMinimum = Math.min(...smooth)
@@ -65,13 +76,17 @@ function oneNight(building: TruthBuilding, roomId: string, all: readonly Reading
   const window: Reading[] = []
   for (let i = start; i < rows.length; i++) {
     const excess = smooth[i]! - background
-    if (rows[i]!.clockS - rows[start]!.clockS > LONGEST_S || excess < Math.max(50, (smooth[start]! - background) * 0.1)) break
+    if (
+      rows[i]!.clockS - rows[start]!.clockS > LONGEST_S ||
+      excess < Math.max(50, (smooth[start]! - background) * 0.2)
+    )
+      break
     window.push(rows[i]!)
   }
   if (window.length < 8) return null
   const line = logLine(window, background)
   const rate = -line.slope
-  if (line.n < 8 || line.r2 < 0.95 || !(rate > 0)) return null
+  if (line.n < 8 || line.r2 < 0.85 || !(rate > 0)) return null
   const half = studentQuantile975(line.n - 2) * line.standardError
   return {
     room: roomId,
@@ -90,7 +105,7 @@ function oneNight(building: TruthBuilding, roomId: string, all: readonly Reading
 
 /**
  * What a textbook prescribes: log-linear least squares after the day's last drop, the night's minimum (or 420 ppm) as background,
- * down to a tenth of the start, R² of at least 0.95, and the ordinary 95 % interval of the slope.
+ * down to a fifth of the start, R² of at least 0.85, and the ordinary 95 % interval of the slope.
  */
 export function textbook(building: TruthBuilding): Answer[] {
   return building.rooms.flatMap((room) => {

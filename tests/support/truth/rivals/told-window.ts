@@ -4,77 +4,52 @@ import { isoZ, localDate } from '../calendar'
 import { type Evening, eveningsOf } from '../judge'
 import type { Reading } from '../sensor'
 import { quantile } from '../summary'
-import { lagOne, studentQuantile975 } from './statistics'
+import { type Fit, fitDecay, fitWithNeighbour } from './least-squares'
+import { studentQuantile975 } from './statistics'
 
-type Fit = { rate: number; standardError: number; background: number }
-
-/** Best start excess and background for a rate by linear least squares, with the sum of squares that is left. */
-function given(rows: readonly Reading[], rate: number, fixed: number | null) {
-  const t0 = rows[0]!.clockS
-  let see = 0
-  let se = 0
-  let sey = 0
-  let sy = 0
-  for (const row of rows) {
-    const e = Math.exp((-rate * (row.clockS - t0)) / 3600)
-    see += e * e
-    se += e
-    sey += e * row.ppm
-    sy += row.ppm
-  }
-  const n = rows.length
-  const background = fixed ?? (sy * see - se * sey) / (n * see - se * se)
-  const start = (sey - background * se) / see
-  const residuals = rows.map((r) => r.ppm - background - start * Math.exp((-rate * (r.clockS - t0)) / 3600))
-  return { start, background, residuals, left: residuals.reduce((sum, r) => sum + r * r, 0) }
-}
-
-/** Nonlinear least squares of B + E exp(−A t) by golden-section search on ln A; interval from an effective number of readings. */
-function fit(rows: readonly Reading[], fixed: number | null): Fit | null {
-  const cost = (ln: number) => given(rows, Math.exp(ln), fixed).left
-  const golden = (Math.sqrt(5) - 1) / 2
-  let low = Math.log(0.01)
-  let high = Math.log(30)
-  for (let i = 0; i < 60; i++) {
-    const a = high - golden * (high - low)
-    const b = low + golden * (high - low)
-    if (cost(a) < cost(b)) high = b
-    else low = a
-  }
-  const rate = Math.exp((low + high) / 2)
-  const best = given(rows, rate, fixed)
-  const phi = lagOne(best.residuals)
-  const effective = (rows.length * (1 - phi)) / (1 + phi)
-  const parameters = fixed === null ? 3 : 2
-  if (effective <= parameters + 1) return null
-  // curvature of the profile of the sum of squares gives the standard error of ln A
-  const h = 0.02
-  const curvature = (cost(Math.log(rate) + h) - 2 * best.left + cost(Math.log(rate) - h)) / (h * h)
-  if (!(curvature > 0)) return null
-  const variance = (2 * best.left) / (effective - parameters) / curvature
-  return { rate, standardError: Math.sqrt(variance * (rows.length / effective > 1 ? 1 : 1)), background: best.background }
-}
-
-function backgroundOf(building: TruthBuilding, room: TruthRoom, evening: Evening): number {
+/** Level and standard uncertainty of the background: the settled room, else the outdoor sensor, else 425 ppm. */
+function backgroundOf(
+  building: TruthBuilding,
+  room: TruthRoom,
+  evening: Evening,
+): { ppm: number; sd: number } {
   const { spell } = evening
-  const settledS = spell.fromS + (5 / spell.totalPerHour) * 3600
+  const settledS = spell.fromS + (4.5 / spell.totalPerHour) * 3600
   const own = room.readings.filter((r) => r.trueS > settledS && r.trueS < spell.steadyToS).map((r) => r.ppm)
-  if (own.length >= 5) return quantile(own, 0.5)
-  const outdoor = building.outdoor?.filter((r) => r.trueS > spell.fromS - 3600 && r.trueS < spell.toS).map((r) => r.ppm)
-  return outdoor && outdoor.length > 0 ? outdoor.reduce((a, b) => a + b, 0) / outdoor.length : 425
+  if (own.length >= 5) return { ppm: quantile(own, 0.5), sd: 8 }
+  const outdoor = building.outdoor?.filter((r) => r.trueS > spell.fromS - 3600 && r.trueS < spell.toS)
+  if (outdoor && outdoor.length > 0)
+    return { ppm: outdoor.reduce((a, b) => a + b.ppm, 0) / outdoor.length, sd: 18 }
+  return { ppm: 425, sd: 22 }
+}
+
+/** The hall's level at each of the room's readings (linear between its own readings). */
+function nextDoor(building: TruthBuilding, room: TruthRoom, rows: readonly Reading[]): number[] {
+  const hall = building.neighbours.find((n) => n.id === room.entry.neighbour)!.readings
+  let k = 0
+  return rows.map((row) => {
+    while (k + 2 < hall.length && hall[k + 1]!.trueS < row.trueS) k++
+    const a = hall[k]!
+    const b = hall[k + 1]!
+    return a.ppm + ((row.trueS - a.trueS) / (b.trueS - a.trueS)) * (b.ppm - a.ppm)
+  })
 }
 
 function oneEvening(building: TruthBuilding, evening: Evening): Answer | null {
   const { room, spell } = evening
   const fromS = spell.fromS + Math.max(240, 4 * room.draft.sensor.lagS)
-  const wholeX = ((spell.steadyToS - fromS) / 3600) * spell.totalPerHour
-  const toS = Math.min(spell.steadyToS, fromS + (3.5 / spell.totalPerHour) * 3600)
-  const rows = room.readings.filter((r) => r.trueS >= fromS && r.trueS < toS && r.ppm < room.draft.sensor.rangeMaxPpm)
+  const toS = Math.min(spell.steadyToS, fromS + (2.5 / spell.totalPerHour) * 3600)
+  const rows = room.readings.filter(
+    (r) => r.trueS >= fromS && r.trueS < toS && r.ppm < room.draft.sensor.rangeMaxPpm,
+  )
   if (rows.length < 6) return null
-  const settled = wholeX >= 5
-  const found = fit(rows, wholeX >= 3 && !settled ? null : backgroundOf(building, room, evening))
+  const background = backgroundOf(building, room, evening)
+  const coupled = room.draft.neighbour !== undefined
+  let found: Fit | null
+  if (coupled) found = fitWithNeighbour(rows, background.ppm, nextDoor(building, room, rows))
+  else found = fitDecay(rows, background.ppm, background.sd)
   if (!found) return null
-  const half = studentQuantile975(rows.length - 3) * found.standardError
+  const half = studentQuantile975(found.degrees) * found.standardErrorOfLn
   return {
     room: room.id,
     night: localDate(building.zone, rows[0]!.clockS),
@@ -84,18 +59,20 @@ function oneEvening(building: TruthBuilding, evening: Evening): Answer | null {
     ach: found.rate,
     ach_low: found.rate * Math.exp(-half),
     ach_high: found.rate * Math.exp(half),
-    background_ppm: found.background,
+    background_ppm: background.ppm,
     quality: 'accepted',
-    reasons: [],
+    reasons: coupled ? ['neighbour-coupled'] : [],
   }
 }
 
 /**
  * The fit that is told the truth about the window: when the last person left, when the rate changed or somebody came, and how long
- * three and a half time constants are. What remains is the sensor and the background. Answers each evening that has a real decay.
+ * two and a half time constants are. What remains is the sensor and the background. Answers each evening that has a real decay;
+ * says nothing where an unmeasured neighbour makes the rate unknowable.
  */
 export function toldWindow(building: TruthBuilding): Answer[] {
-  return building.rooms.flatMap((room) =>
-    eveningsOf(building, room).flatMap((evening) => (evening.answerable ? (oneEvening(building, evening) ?? []) : [])),
-  )
+  return building.rooms.flatMap((room) => {
+    if (room.draft.neighbour && !room.draft.neighbour.measured) return []
+    return eveningsOf(building, room).flatMap((e) => (e.answerable ? (oneEvening(building, e) ?? []) : []))
+  })
 }
