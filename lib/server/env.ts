@@ -57,3 +57,22 @@ export function env(): Env {
 export function publicUrl(): string {
   return env().PUBLIC_URL ?? `http://${env().HOST}:${env().PORT}`
 }
+
+/** The key that seals session cookies; a process that has none cannot sign anyone in. */
+export function authSecret(): string {
+  const secret = env().NEXTAUTH_SECRET
+  if (secret) return secret
+  throw new Error('NEXTAUTH_SECRET is not set: give 32 or more random signs (npm start makes and keeps one)')
+}
+
+/** next-auth reads its own address from the environment; it is the address people use. */
+export function tellNextAuthItsAddress(): void {
+  // biome-ignore lint/style/noProcessEnv: the one place that touches it
+  process.env.NEXTAUTH_URL = publicUrl()
+}
+
+/** Are the demo's sign-ins offered? Only in the demo, and only where none but this machine can reach them. */
+export function offersDemoSignIn(): boolean {
+  const { EBBMARK_DEMO, HOST } = env()
+  return EBBMARK_DEMO && ['127.0.0.1', '::1', 'localhost'].includes(HOST)
+}
