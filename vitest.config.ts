@@ -10,7 +10,7 @@ export default defineConfig({
     projects: [
       {
         resolve: { alias },
-        test: { name: 'unit', include: ['tests/unit/**/*.test.{ts,tsx}'], pool: 'threads' },
+        test: { name: 'unit', include: ['tests/unit/**/*.test.{ts,tsx}'], pool: 'forks' },
       },
       {
         resolve: { alias },
