@@ -1,7 +1,8 @@
 import { integrate, outdoorAir, STEP_S, type ZonePlan } from './air'
 import { addDays, localTimeS, weekday } from './calendar'
-import { CLASSES } from './classes'
+import { CLASSES, type ClassOfRooms } from './classes'
 import type { Draft } from './draft'
+import { OFFICE } from './office'
 import { type Random, randomFrom } from './random'
 import { type EmptySpell, emptySpells, keepMinutes, type Truth } from './record'
 import { damage, observe, type Reading, SOUND_SENSOR } from './sensor'
@@ -35,8 +36,11 @@ export type Order = {
   outdoor: boolean
 }
 
+/** Every class that can be ordered: those of the table, and the office of hand-made evenings. */
+const KINDS: Record<string, ClassOfRooms> = { ...CLASSES, office: OFFICE }
+
 function firstDate(order: Order, random: Random): string {
-  const kind = CLASSES[order.className]!
+  const kind = KINDS[order.className]!
   if (kind.startDates) return kind.startDates[order.part % kind.startDates.length]!
   // any week of the year that is far from a clock change
   const monday = addDays('2026-01-05', 7 * random.pick([0, 1, 4, 6, 8, 15, 18, 20, 24, 30, 35, 38, 45, 47]))
@@ -58,7 +62,7 @@ function zonePlans(draft: Draft): ZonePlan[] {
 function makeRoom(order: Order, id: string, index: number, frame: Frame) {
   const random = randomFrom(`${order.seed}/${order.className}/${order.part}/${id}`)
   const setting = { random, zone: frame.zone, dates: frame.dates, fromS: frame.fromS, index }
-  const draft = CLASSES[order.className]!.draft(setting)
+  const draft = KINDS[order.className]!.draft(setting)
   const records = integrate(zonePlans(draft), frame.fromS, frame.outdoor, random.fork('air'))
   const truth = keepMinutes(records[0]!, frame.outdoor)
   const steps = draft.outdoorRate.map((k) => k.fromS)
@@ -80,8 +84,8 @@ type Frame = { zone: string; dates: string[]; fromS: number; outdoor: Float64Arr
 
 /** Draws one building of rooms of a class: everything depends on the order alone. */
 export function makeBuilding(order: Order): TruthBuilding {
-  const kind = CLASSES[order.className]
-  if (!kind) throw new Error(`no class "${order.className}"; there are ${Object.keys(CLASSES).join(', ')}`)
+  const kind = KINDS[order.className]
+  if (!kind) throw new Error(`no class "${order.className}"; there are ${Object.keys(KINDS).join(', ')}`)
   const random = randomFrom(`${order.seed}/${order.className}/${order.part}/building`)
   const zone = random.pick(
     kind.zones ?? ['Europe/Lisbon', 'Europe/Berlin', 'Europe/London', 'Europe/Helsinki'],

@@ -3,7 +3,7 @@ import { localTimeS } from './calendar'
 import { type Draft, draftRoom, type Setting } from './draft'
 import { cleaners, guardRound, shifts } from './people'
 
-type ClassOfRooms = {
+export type ClassOfRooms = {
   /** what makes these rooms hard, for the table's reader */
   about: string
   draft(setting: Setting): Draft
@@ -231,6 +231,23 @@ function noisy(setting: Setting): Draft {
   return draft
 }
 
+/** Windows opened for 5 to 20 minutes with people inside: the level falls fast, and it is no test of the empty room. */
+function airing(setting: Setting): Draft {
+  const { random } = setting
+  const draft = draftRoom(setting, { rate: [0.2, 0.8], excess: [1200, 2600], setBack: false })
+  const knots: Knot[] = [...draft.outdoorRate]
+  for (const date of setting.dates) {
+    for (const hour of [10.2, 13.1, 15.2]) {
+      const fromS = localTimeS(setting.zone, date, hour + random.uniform(0, 0.8))
+      knots.push({ fromS, perHour: random.uniform(4, 10) })
+      knots.push({ fromS: fromS + random.uniform(300, 1200), perHour: draft.ratePerHour })
+    }
+  }
+  draft.outdoorRate = knots
+  draft.declared.air = 'natural'
+  return draft
+}
+
 export const CLASSES: Record<string, ClassOfRooms> = {
   clean: { about: 'sound sensor, long evening, one rate', draft: (s) => draftRoom(s, { setBack: false }) },
   noisy: { about: '12–30 ppm noise, 10 ppm or 10-bit steps', draft: noisy },
@@ -252,6 +269,7 @@ export const CLASSES: Record<string, ClassOfRooms> = {
   },
   'very-slow': { about: 'below 0.1 per hour', draft: verySlow },
   'never-empty': { about: 'people day and night', draft: neverEmpty },
+  airing: { about: 'windows opened with people inside', draft: airing },
   dst: {
     about: 'late decays across both clock changes',
     startDates: ['2026-03-26', '2026-10-22'],
