@@ -63,7 +63,13 @@ export type Reason = (typeof REASONS)[number]
 
 export type Quality = 'accepted' | 'doubtful' | 'refused'
 export type EstimateKind = 'fit' | 'at-least' | 'at-most' | 'range'
-export type BackgroundOrigin = 'own record' | 'outdoor sensor' | 'quiet nights' | 'neighbour' | 'default' | 'fitted'
+export type BackgroundOrigin =
+  | 'own record'
+  | 'outdoor sensor'
+  | 'quiet nights'
+  | 'neighbour'
+  | 'default'
+  | 'fitted'
 
 /** One check the decay page lists: what was asked, what was found. `found` and `asked` are ready-made words with units. */
 export type Check = { name: string; found: string; asked: string; passes: boolean }

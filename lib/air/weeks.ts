@@ -64,6 +64,24 @@ function standardDeviation(values: readonly number[]): number | null {
   return Math.sqrt(values.reduce((sum, y) => sum + (y - mean) ** 2, 0) / (values.length - 1))
 }
 
+/** From this many days on, days that resemble the day before widen the interval. */
+const CORRELATION_MIN_DAYS = 8
+const MOST_CORRELATION = 0.6
+
+/** How much wider the interval of correlated days is than that of independent ones: √((1 + φ)/(1 − φ)), φ from the days, never below 1. */
+function correlationWidening(values: readonly number[]): number {
+  if (values.length < CORRELATION_MIN_DAYS || !values.every(Number.isFinite)) return 1
+  const centre = median(values)
+  let lagged = 0
+  let total = 0
+  values.forEach((value, i) => {
+    total += (value - centre) ** 2
+    if (i > 0) lagged += (value - centre) * (values[i - 1]! - centre)
+  })
+  const correlation = Math.min(MOST_CORRELATION, total > 0 ? lagged / total : 0)
+  return correlation > 0 ? Math.sqrt((1 + correlation) / (1 - correlation)) : 1
+}
+
 /** Location and scatter limits on ln(rate). A day known only within limits enters once with each, which is exact for monotone limits. */
 function locate(days: readonly DayRate[], sd: number | null) {
   const lows = days.map((day) => day.lowLn)
@@ -73,10 +91,11 @@ function locate(days: readonly DayRate[], sd: number | null) {
     const below = hodgesLehmann(lows)
     const above = exact ? below : hodgesLehmann(highs)
     const settled = above.location - below.location < 0.02
+    const widening = correlationWidening(lows)
     return {
       location: settled ? (below.location + above.location) / 2 : null,
-      low: below.low ?? Number.NEGATIVE_INFINITY,
-      high: above.high ?? Number.POSITIVE_INFINITY,
+      low: below.location - widening * (below.location - below.low!),
+      high: above.location + widening * (above.high! - above.location),
       method: settled ? ('signed-rank' as const) : ('bounds' as const),
     }
   }
@@ -100,8 +119,8 @@ const rateOrNull = (ln: number | null) => (ln !== null && Number.isFinite(ln) ? 
 /**
  * Typical rate of the days, 1/h, with a 95 % interval, from the estimates of ONE mode. Several decays of a day are first combined to
  * that day. On ln(rate): six days and more by Hodges–Lehmann with the exact signed-rank interval, three to five by Student t with a
- * floor under the scatter, fewer with an assumed scatter. The day-to-day scatter stays in the interval. Background, gain and the
- * caller's common terms are added afterwards and never averaged down. Days known only as bounds enter as bounds.
+ * floor under the scatter, fewer with an assumed scatter. The day-to-day scatter stays in the interval. From eight days on, days that
+ * resemble the day before widen it. Background, gain and the caller's common terms are added afterwards and never averaged down. Days known only as bounds enter as bounds.
  * @returns null when no estimate can be used
  * @source Hodges & Lehmann 1963; GUM (JCGM 100) for the common terms; small-sample floors are engineering choices
  */

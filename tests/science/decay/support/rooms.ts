@@ -35,7 +35,13 @@ export type TrueRoom = {
   evenings: { leaveS: number; endS: number }[]
 }
 
-export type Options = { days?: number; stepS?: number; sigmaPpm?: number; phi?: number; resolutionPpm?: number }
+export type Options = {
+  days?: number
+  stepS?: number
+  sigmaPpm?: number
+  phi?: number
+  resolutionPpm?: number
+}
 
 type Plan = {
   rate: number
@@ -118,7 +124,14 @@ function fanRuns(plan: Plan, t: number): boolean {
   return !plan.fanOffS.some((off, i) => t >= off && t < plan.fanOnS[i]!)
 }
 
-function integrate(room: TrueRoom, plan: Plan, random: SeededRandom, minutes: number, clean: Float64Array, corridor: Float64Array) {
+function integrate(
+  room: TrueRoom,
+  plan: Plan,
+  random: SeededRandom,
+  minutes: number,
+  clean: Float64Array,
+  corridor: Float64Array,
+) {
   const exchange = room.kind === 'coupled' ? plan.rate * random.between(0.2, 0.7) : 0
   const base = 425 + 8 * random.normal()
   let ppm = base + 20
@@ -137,7 +150,8 @@ function integrate(room: TrueRoom, plan: Plan, random: SeededRandom, minutes: nu
       }
       const runs = fanRuns(plan, t)
       const demand = Math.min(1.6 * plan.rate, plan.demandPerPpm * Math.max(0, ppm - background - 150))
-      const outdoorRate = (runs ? plan.rate * (plan.demandPerPpm > 0 ? 0.5 : 1) : plan.offRate) + (runs ? demand : 0)
+      const outdoorRate =
+        (runs ? plan.rate * (plan.demandPerPpm > 0 ? 0.5 : 1) : plan.offRate) + (runs ? demand : 0)
       const rate = outdoorRate + exchange
       const toward = (outdoorRate * background + exchange * corridorPpm) / rate
       const target = toward + (3.6e6 * source) / (rate * room.volumeM3)

@@ -1,0 +1,170 @@
+/**
+ * One building, one local day: every decay that starts on it, in every room, with what rooms know of each other. The nightly job, the command
+ * `analyse` and the tests all call this; it reads no clock, no file and no database.
+ */
+import { estimateBackground, outdoorLevel, type QuietFloor, quietFloor } from './decay/background'
+import { cleanRecord } from './decay/clean'
+import { findFalls, levelTrack } from './decay/falls'
+import { modeOf, type RateDrop, type SupplyStop, sharedStops } from './decay/modes'
+import { decayOf, refusedDecay } from './decay/outcome'
+import { type FallReading, readFall } from './decay/read-fall'
+import type { Background, Decay, RoomSpec, Series, SupplyChange } from './types'
+
+/** What earlier nights left behind for a room. */
+export type RoomHistory = {
+  quietFloors: readonly QuietFloor[]
+  /** earlier nights on which this room's air handler was seen to stop, seconds after local midnight */
+  supplyStops?: readonly { date: string; clockS: number; to: SupplyStop['to'] }[]
+}
+
+export type BuildingRoom = {
+  room: RoomSpec
+  sensorId?: string
+  /** covers local day start - 2 h to next day 12:00 */
+  series: Series
+  supply?: readonly SupplyChange[]
+  history?: RoomHistory
+}
+
+export type BuildingDay = {
+  timeZone: string
+  /** local date, YYYY-MM-DD */
+  date: string
+  dayStartS: number
+  dayEndS: number
+  rooms: readonly BuildingRoom[]
+  outdoor?: Series
+  defaultOutdoor?: { ppm: number; standardUncertaintyPpm: number }
+}
+
+export type RoomNote = {
+  code: 'supply-stopped-early' | 'floor-implausible' | 'sensor-stuck' | 'clock-moved'
+  text: string
+  atS?: number
+}
+
+export type RoomDay = {
+  roomId: string
+  sensorId?: string
+  decays: Decay[]
+  background: Background | null
+  quietFloor: QuietFloor | null
+  supplyStops: SupplyStop[]
+  notes: RoomNote[]
+}
+
+type Prepared = {
+  input: BuildingRoom
+  record: ReturnType<typeof cleanRecord>
+  floor: QuietFloor | null
+  falls: { reading: FallReading | null; background: Background; fall: ReturnType<typeof findFalls>[number] }[]
+}
+
+function prepare(
+  day: BuildingDay,
+  input: BuildingRoom,
+  outdoor: ReturnType<typeof outdoorLevel> | undefined,
+): Prepared {
+  const record = cleanRecord(input.series, input.room.sensor)
+  const track = levelTrack(record, day.dayStartS - 7200, day.dayEndS + 12 * 3600)
+  const floor = quietFloor(track, day.dayStartS + 12 * 3600, day.dayEndS + 12 * 3600, day.date)
+  const before = quietFloor(track, day.dayStartS - 7200, day.dayStartS + 12 * 3600, `${day.date} before`)
+  const history = [
+    ...(input.history?.quietFloors ?? []).filter((entry) => entry.date !== day.date),
+    ...(before ? [before] : []),
+  ]
+  const falls = findFalls(track)
+    .filter((fall) => fall.toS > day.dayStartS && fall.fromS < day.dayEndS)
+    .map((fall) => {
+      const atS = fall.fromS + Math.min(5400, (fall.toS - fall.fromS) / 2)
+      const background = estimateBackground({
+        own: floor,
+        history,
+        outdoor,
+        atS,
+        defaultOutdoor: day.defaultOutdoor,
+      })
+      return { fall, background, reading: readFall(record, fall, background) }
+    })
+  return { input, record, floor, falls }
+}
+
+/** Rate drops of every room of one air handler, to be compared. */
+function dropsOf(prepared: readonly Prepared[]): RateDrop[] {
+  const drops: RateDrop[] = []
+  for (const { input, falls } of prepared) {
+    for (const { reading } of falls) {
+      reading?.readings.forEach((own, k) => {
+        const next = reading.readings[k + 1]
+        if (!own.changeAtEnd || !next || next.estimate.ratePerHour > 0.8 * own.estimate.ratePerHour) return
+        drops.push({
+          roomId: input.room.id,
+          ...own.changeAtEnd,
+          before: own.estimate.ratePerHour,
+          after: next.estimate.ratePerHour,
+        })
+      })
+    }
+  }
+  return drops
+}
+
+/** Analyses every room of a building for one local date. Never throws for bad readings: those lead to refused decays with reasons. */
+export function analyseBuildingDay(day: BuildingDay): RoomDay[] {
+  const outdoorRecord = day.outdoor && day.outdoor.timeS.length > 3 ? cleanRecord(day.outdoor) : null
+  const outdoor = outdoorRecord
+    ? outdoorLevel(levelTrack(outdoorRecord, day.dayStartS - 7200, day.dayEndS + 12 * 3600))
+    : undefined
+  const prepared = day.rooms.map((input) => prepare(day, input, outdoor))
+  const stops = new Map<string, SupplyStop[]>()
+  for (const handler of new Set(
+    day.rooms.map(({ room }) => room.airHandler).filter((name) => name !== undefined),
+  )) {
+    stops.set(
+      handler,
+      sharedStops(dropsOf(prepared.filter(({ input }) => input.room.airHandler === handler))),
+    )
+  }
+  return prepared.map((room) => finish(day, room, stops.get(room.input.room.airHandler ?? '') ?? []))
+}
+
+function finish(day: BuildingDay, prepared: Prepared, stops: SupplyStop[]): RoomDay {
+  const { input, record, floor, falls } = prepared
+  const notes: RoomNote[] = []
+  const decays: Decay[] = []
+  let used: Background | null = null
+  for (const { reading, background, fall } of falls) {
+    used ??= background
+    const own = reading?.readings ?? []
+    if (own.length === 0)
+      decays.push(refusedDecay({ day, room: input.room, fall, reading, background, record }))
+    for (const entry of own) {
+      const mode = modeOf(input.room, entry, { supply: input.supply, stops, timeZone: day.timeZone })
+      if (mode.disagrees) noteEarlyStop(notes, stops)
+      decays.push(decayOf({ day, room: input.room, entry, reading: reading!, background, record, mode }))
+    }
+  }
+  for (const cut of record.stuck) {
+    notes.push({ code: 'sensor-stuck', text: 'The sensor repeated one value for too long.', atS: cut.fromS })
+  }
+  const inDay = decays.filter((decay) => decay.startS >= day.dayStartS && decay.startS < day.dayEndS)
+  inDay.sort((a, b) => a.startS - b.startS)
+  return {
+    roomId: input.room.id,
+    sensorId: input.sensorId,
+    decays: inDay,
+    background: used,
+    quietFloor: floor,
+    supplyStops: stops,
+    notes,
+  }
+}
+
+function noteEarlyStop(notes: RoomNote[], stops: readonly SupplyStop[]): void {
+  if (notes.some((note) => note.code === 'supply-stopped-early')) return
+  notes.push({
+    code: 'supply-stopped-early',
+    text: 'The supply stopped earlier than its hours say: several rooms of this air handler slowed together.',
+    atS: stops[0]?.atS,
+  })
+}

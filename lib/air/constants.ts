@@ -1,0 +1,53 @@
+/**
+ * The science's settings: value, unit, where it comes from. "practice" is common engineering practice without a normative source;
+ * "chosen" is our own choice, checked by the recovery and coverage suites.
+ */
+
+/** Outdoor CO2 with its date: remote-site yearly means 421 (2023) and 425 (2024) growing about 3 ppm a year, plus a town's share. */
+export const DEFAULT_OUTDOOR = { ppm: 436, standardUncertaintyPpm: 25, date: '2026-01' } as const
+
+/** Readings outside this range are no room air (ppm; practice). */
+export const PLAUSIBLE_PPM = { low: 300, high: 20_000 } as const
+/** An empty room's floor outside this range speaks of the sensor, not of the air (ppm; practice). */
+export const PLAUSIBLE_FLOOR_PPM = { low: 375, high: 560 } as const
+
+/** Sensor defaults: data-sheet accuracy of wall-mounted infrared sensors, as a 95 % half-width (practice). */
+export const DEFAULT_SENSOR = { accuracyPpm: 40, accuracyPct: 3, resolutionPpm: 1 } as const
+
+/** Detection (chosen). */
+export const DETECTION = {
+  /** width of the bins that peaks and troughs are looked for in, seconds */
+  binS: 300,
+  /** a turning point must stand out by this much, ppm, and by this many noise deviations of a bin */
+  prominencePpm: 18,
+  prominenceSigmas: 5,
+  /** a fall shorter than this is not reported, not even as refused, ppm */
+  leastDropPpm: 70,
+  /** most bins in one fit */
+  fitBins: 120,
+} as const
+
+/** Gates of a usable decay (practice; methods of tracer decay, see E741 and ISO 12569 for the two-point minimum A T = 1). */
+export const GATES = {
+  /** smallest excess at the start, ppm, and in standard uncertainties of the background and the noise */
+  startExcessPpm: 110,
+  startExcessSigmas: 8,
+  /** least fall in time constants */
+  timeConstants: 0.35,
+  durationS: 900,
+  points: 5,
+  /** largest gap as a share of the window */
+  gapShare: 0.3,
+  /** relative half-width of the 95 % interval up to which a figure is accepted, and up to which it is given at all */
+  acceptedHalfWidth: 0.25,
+  doubtfulHalfWidth: 0.6,
+} as const
+
+/** How far outdoor air wanders in the hours between the night's floor and the evening, ppm (chosen; daily course of town air). */
+export const BACKGROUND_WANDER_PPM = 6
+
+/** CO2 of one quiet grown person, L/s at room conditions: the smallest source that a test for people must see (Persily and de Jonge 2017, 1.0 met). */
+export const QUIET_PERSON_LPS = 0.0042
+
+/** Rates that a building can have, 1/h (chosen; wider than any room). */
+export const RATE_LIMITS = { low: 0.01, high: 60 } as const

@@ -1,0 +1,75 @@
+/** From a fit to a rate with a 95 % interval: regression with correlated residuals, background, and choice of model. */
+import { effectiveSampleSize } from '@/lib/math/autocorrelation'
+import { t95 } from '@/lib/math/student-t'
+import { type Binned, fitPiecewise, type PiecewiseFit, type Prior } from './piecewise'
+import { residualScale } from './segments'
+
+export type RateEstimate = {
+  ratePerHour: number
+  lowPerHour: number
+  highPerHour: number
+  parts: { regression: number; background: number; model: number }
+  lagOne: number
+  effectivePoints: number
+  residualSdPpm: number
+}
+
+/** The same readings with noise scaled up to what their residuals show. */
+export function scaledBins(data: Binned, factor: number): Binned {
+  return { ...data, sdPpm: data.sdPpm.map((sd) => sd * factor) }
+}
+
+/** Refits with the noise that the residuals show, so that readings and the background's prior are weighed rightly. */
+export function reweighed(data: Binned, fit: PiecewiseFit, prior: Prior | null) {
+  const scale = residualScale(fit)
+  const factor = Math.sqrt(scale.variance * scale.inflation)
+  const start = {
+    logStartExcess: fit.logStartExcess,
+    ratesPerHour: fit.ratesPerHour,
+    backgroundPpm: fit.backgroundPpm,
+  }
+  const again =
+    factor > 1.02 ? fitPiecewise(scaledBins(data, factor), fit.fromH, fit.breaksH, prior, start, 10) : fit
+  return { fit: again ?? fit, ...scale, factor: again ? factor : 1 }
+}
+
+/** Standard uncertainty of ln A for rate k: [with the background known, with it as uncertain as it is]. */
+export function logRateUncertainty(fit: PiecewiseFit, k: number): { regression: number; background: number } {
+  const size = fit.ratesPerHour.length + 2
+  const b = size - 1
+  const a = k + 1
+  const rate = Math.abs(fit.ratesPerHour[k]!)
+  const own = fit.covariance[a * size + a]!
+  const cross = fit.covariance[a * size + b]!
+  const back = fit.covariance[b * size + b]!
+  const background = back > 0 ? (cross * cross) / back : 0
+  return {
+    regression: Math.sqrt(Math.max(0, own - background)) / rate,
+    background: Math.sqrt(background) / rate,
+  }
+}
+
+/** The estimate of rate k with its interval on the scale of ln A. `model` is the standard uncertainty from the choice of window and model. */
+export function rateEstimate(
+  weighed: ReturnType<typeof reweighed>,
+  k: number,
+  model: number,
+  medianSdPpm: number,
+): RateEstimate {
+  const { fit } = weighed
+  const ratePerHour = fit.ratesPerHour[k]!
+  const { regression, background } = logRateUncertainty(fit, k)
+  const effectivePoints = Math.max(3, effectiveSampleSize(fit.points, Math.max(0, weighed.lagOne)))
+  const unknowns = 2 + fit.breaksH.length
+  const factor = t95(Math.max(2, effectivePoints - unknowns))
+  const half = Math.hypot(factor * regression, 1.96 * background, 1.96 * model)
+  return {
+    ratePerHour,
+    lowPerHour: ratePerHour * Math.exp(-half),
+    highPerHour: ratePerHour * Math.exp(half),
+    parts: { regression, background, model },
+    lagOne: weighed.lagOne,
+    effectivePoints,
+    residualSdPpm: medianSdPpm * Math.sqrt(weighed.variance),
+  }
+}

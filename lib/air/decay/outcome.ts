@@ -1,0 +1,140 @@
+/** Puts a reading, its verdict and its mode together into the decay that everyone sees. */
+import type { Background, Decay, Reason, RoomSpec } from '@/lib/air/types'
+import { meanAgeMinutes } from '@/lib/units'
+import type { CleanRecord } from './clean'
+import { explainDecay } from './explain'
+import type { Fall } from './falls'
+import { judgeReading, pointsInside, type Suspicion } from './judge'
+import type { Moded } from './modes'
+import type { FallReading, Reading } from './read-fall'
+
+type Day = { date: string; dayStartS: number; dayEndS: number }
+
+const NOTHING = {
+  airChangeRatePerHour: null,
+  airChangeRateLowPerHour: null,
+  airChangeRateHighPerHour: null,
+  outdoorRateLowPerHour: null,
+  outdoorRateHighPerHour: null,
+  meanAgeMin: null,
+  mode: 'unknown' as const,
+  modeFrom: null,
+  rateChangeAtS: null,
+  rateChangeLowS: null,
+  rateChangeHighS: null,
+  lagOneCorrelation: null,
+  effectivePoints: null,
+  residualSdPpm: null,
+  uncertaintyParts: null,
+}
+
+export type Refused = {
+  day: Day
+  room: RoomSpec
+  fall: Fall
+  reading: FallReading | null
+  background: Background
+  record: CleanRecord
+}
+
+function refusalReasons({ fall, reading, background, record }: Refused): Reason[] {
+  const reasons: Reason[] = []
+  if (fall.peakPpm - background.ppm < 90) reasons.push('start-too-low')
+  if (record.stuck.some((cut) => cut.fromS < fall.toS && cut.toS > fall.fromS)) reasons.push('sensor-suspect')
+  if (reading === null) reasons.push('too-few-points')
+  else if (reading.peopleInside) reasons.push('people-present')
+  else reasons.push('too-short')
+  return reasons
+}
+
+/** A fall that yields no rate at all, with the reasons. */
+export function refusedDecay(refused: Refused): Decay {
+  const { day, room, fall, background, record } = refused
+  const reasons = refusalReasons(refused)
+  const decay = {
+    ...NOTHING,
+    roomId: room.id,
+    night: day.date,
+    startS: fall.fromS,
+    endS: fall.toS,
+    kind: 'fit' as const,
+    background,
+    startPpm: fall.peakPpm,
+    endPpm: fall.troughPpm,
+    quality: 'refused' as const,
+    reasons,
+    lastPersonLeftS: null,
+    points: pointsInside(record, fall.fromS, fall.toS),
+    checks: [],
+  }
+  return { ...decay, sentence: explainDecay(decay) }
+}
+
+export type Outcome = {
+  day: Day
+  room: RoomSpec
+  entry: Reading
+  reading: FallReading
+  background: Background
+  record: CleanRecord
+  mode: Moded
+}
+
+function suspicionOf({ room }: Outcome): Suspicion {
+  const doubts: Reason[] = []
+  if (room.air === 'recirculating') doubts.push('recirculation-possible')
+  return { doubts, refusals: [] }
+}
+
+/** The decay of one reading: rate or bound, interval, mode, quality, reasons, checks and a sentence. */
+export function decayOf(outcome: Outcome): Decay {
+  const { day, room, entry, reading, background, record, mode } = outcome
+  const verdict = judgeReading(entry, record, background, suspicionOf(outcome))
+  const { estimate, piece } = entry
+  const given = verdict.quality !== 'refused'
+  const rate = given && (verdict.kind === 'fit' || verdict.kind === 'range') ? estimate.ratePerHour : null
+  const reasons = [...verdict.reasons]
+  if (given && (room.air === undefined || room.air === 'unknown')) reasons.push('recirculation-possible')
+  const change = entry.changeAtEnd ?? entry.changeAtStart
+  const recirculates = given && room.air === 'recirculating'
+  const decay = {
+    roomId: room.id,
+    night: day.date,
+    startS: entry.fromS,
+    endS: entry.toS,
+    kind: verdict.kind,
+    airChangeRatePerHour: rate,
+    airChangeRateLowPerHour: given && verdict.kind !== 'at-most' ? estimate.lowPerHour : null,
+    airChangeRateHighPerHour: given && verdict.kind !== 'at-least' ? estimate.highPerHour : null,
+    outdoorRateLowPerHour: recirculates ? 0 : null,
+    outdoorRateHighPerHour: recirculates ? estimate.highPerHour : null,
+    background: {
+      ppm: entry.fit.backgroundPpm,
+      standardUncertaintyPpm: backgroundSd(entry),
+      origin: background.origin,
+    },
+    startPpm: entry.fit.backgroundPpm + piece.startExcessPpm,
+    endPpm: entry.fit.backgroundPpm + piece.endExcessPpm,
+    meanAgeMin: rate === null ? null : meanAgeMinutes(rate),
+    mode: given ? mode.mode : ('unknown' as const),
+    modeFrom: given ? mode.modeFrom : null,
+    quality: verdict.quality,
+    reasons,
+    rateChangeAtS: change?.atS ?? null,
+    rateChangeLowS: change?.lowS ?? null,
+    rateChangeHighS: change?.highS ?? null,
+    lastPersonLeftS: reading.lastPersonLeftS,
+    points: pointsInside(record, entry.fromS, entry.toS),
+    lagOneCorrelation: estimate.lagOne,
+    effectivePoints: estimate.effectivePoints,
+    residualSdPpm: estimate.residualSdPpm,
+    uncertaintyParts: estimate.parts,
+    checks: verdict.checks,
+  }
+  return { ...decay, sentence: explainDecay(decay) }
+}
+
+function backgroundSd(entry: Reading): number {
+  const size = entry.fit.ratesPerHour.length + 2
+  return Math.sqrt(Math.max(0, entry.fit.covariance[size * size - 1]!))
+}

@@ -1,0 +1,200 @@
+/** Where the rate changes inside a fall: breaks added while they earn their keep, then taken away again while nothing is lost. */
+import { biasCorrectedCorrelation, lagOneCorrelation } from '@/lib/math/autocorrelation'
+import { invertSymmetric } from '@/lib/math/linear'
+import { type Binned, fitPiecewise, type PiecewiseFit, type Prior, roughStart } from './piecewise'
+
+export type Segmented = {
+  fit: PiecewiseFit
+  /** residual variance (1 when the noise is as expected) and what correlation makes of it */
+  variance: number
+  inflation: number
+  lagOne: number
+}
+
+const MAX_BREAKS = 4
+/** Gain in chi squared (per unit variance) that one more break must bring: two unknowns at 2 ln n and a margin of six. */
+const gainAsked = (n: number) => 2 * Math.log(Math.max(8, n)) + 6
+
+/** How much a hinge at each bin would lower chi squared, to first order: the score of the hinge outside the span of the present model. */
+function hingeScores(data: Binned, fit: PiecewiseFit, prior: Prior | null): Float64Array {
+  const n = data.timeH.length
+  const rates = fit.ratesPerHour.length
+  const size = rates + 2
+  const columns: Float64Array[] = Array.from({ length: size }, () => new Float64Array(n))
+  const excess = new Float64Array(n)
+  const edges = [fit.fromH, ...fit.breaksH, Number.POSITIVE_INFINITY]
+  for (let i = 0; i < n; i++) {
+    const w = 1 / data.sdPpm[i]!
+    let exponent = fit.logStartExcess
+    const durations: number[] = []
+    for (let k = 0; k < rates; k++) {
+      const d = Math.max(0, Math.min(data.timeH[i]!, edges[k + 1]!) - edges[k]!)
+      durations.push(d)
+      exponent -= fit.ratesPerHour[k]! * d
+    }
+    excess[i] = Math.exp(Math.min(12, exponent)) * w
+    columns[0]![i] = excess[i]!
+    for (let k = 0; k < rates; k++) columns[k + 1]![i] = -excess[i]! * durations[k]!
+    columns[size - 1]![i] = w
+  }
+  const normal = new Float64Array(size * size)
+  for (let a = 0; a < size; a++)
+    for (let b = 0; b < size; b++) {
+      let sum = 0
+      for (let i = 0; i < n; i++) sum += columns[a]![i]! * columns[b]![i]!
+      normal[a * size + b] = sum
+    }
+  if (prior) normal[size * size - 1]! += 1 / prior.sdPpm ** 2
+  const inverse = invertSymmetric(normal, size)
+  const scores = new Float64Array(n)
+  if (!inverse) return scores
+  const cross = new Float64Array(size)
+  for (let m = 2; m < n - 2; m++) {
+    const at = data.timeH[m]!
+    cross.fill(0)
+    let own = 0
+    let along = 0
+    for (let i = m + 1; i < n; i++) {
+      const hinge = -excess[i]! * (data.timeH[i]! - at)
+      own += hinge * hinge
+      along += hinge * fit.residuals[i]!
+      for (let a = 0; a < size; a++) cross[a]! += hinge * columns[a]![i]!
+    }
+    for (let a = 0; a < size; a++)
+      for (let b = 0; b < size; b++) own -= cross[a]! * inverse[a * size + b]! * cross[b]!
+    scores[m] = own > 1e-9 ? (along * along) / own : 0
+  }
+  return scores
+}
+
+function refit(
+  data: Binned,
+  breaksH: readonly number[],
+  prior: Prior | null,
+  like: PiecewiseFit,
+  iterations = 12,
+): PiecewiseFit | null {
+  const sorted = [...breaksH].sort((a, b) => a - b)
+  const rateAt = (t: number) => {
+    let k = 0
+    while (k < like.breaksH.length && t >= like.breaksH[k]!) k++
+    return like.ratesPerHour[k]!
+  }
+  const edges = [like.fromH, ...sorted, data.timeH[data.timeH.length - 1]!]
+  const rates = edges.slice(1).map((end, k) => rateAt((edges[k]! + end) / 2))
+  const start = {
+    logStartExcess: like.logStartExcess,
+    ratesPerHour: rates,
+    backgroundPpm: like.backgroundPpm,
+  }
+  return fitPiecewise(data, like.fromH, sorted, prior, start, iterations)
+}
+
+function apart(breaksH: readonly number[], candidate: number, data: Binned, leastH: number): boolean {
+  const edges = [data.timeH[0]!, ...breaksH, data.timeH[data.timeH.length - 1]!]
+  return edges.every((edge) => Math.abs(edge - candidate) >= leastH)
+}
+
+/** Moves each break along the bins while chi squared falls. */
+function slideBreaks(data: Binned, fit: PiecewiseFit, prior: Prior | null, leastH: number): PiecewiseFit {
+  let best = fit
+  let stride = Math.max(1, Math.round(data.timeH.length / 25))
+  for (let round = 0; round < 12; round++) {
+    let moved = false
+    for (let k = 0; k < best.breaksH.length; k++) {
+      for (const direction of [-1, 1]) {
+        const at = nearestBin(data, best.breaksH[k]!) + direction * stride
+        const candidate = data.timeH[at]
+        if (candidate === undefined) continue
+        const others = best.breaksH.filter((_, i) => i !== k)
+        if (!apart(others, candidate, data, leastH)) continue
+        const trial = refit(data, [...others, candidate], prior, best, 8)
+        if (trial && trial.chiSquared < best.chiSquared - 1e-6) {
+          best = trial
+          moved = true
+        }
+      }
+    }
+    if (!moved) {
+      if (stride === 1) break
+      stride = Math.max(1, Math.floor(stride / 3))
+    }
+  }
+  return best
+}
+
+function nearestBin(data: Binned, timeH: number): number {
+  let best = 0
+  for (let i = 1; i < data.timeH.length; i++) {
+    if (Math.abs(data.timeH[i]! - timeH) < Math.abs(data.timeH[best]! - timeH)) best = i
+  }
+  return best
+}
+
+function addBreak(data: Binned, fit: PiecewiseFit, prior: Prior | null, leastH: number): PiecewiseFit | null {
+  const scores = hingeScores(data, fit, prior)
+  let best: PiecewiseFit | null = null
+  const tried: number[] = []
+  for (let attempt = 0; attempt < 2; attempt++) {
+    let at = -1
+    for (let m = 0; m < scores.length; m++) {
+      if (!apart(fit.breaksH, data.timeH[m]!, data, leastH)) continue
+      if (tried.some((seen) => Math.abs(data.timeH[seen]! - data.timeH[m]!) < 4 * leastH)) continue
+      if (at < 0 || scores[m]! > scores[at]!) at = m
+    }
+    if (at < 0 || scores[at]! < 3) break
+    tried.push(at)
+    const trial = refit(data, [...fit.breaksH, data.timeH[at]!], prior, fit)
+    if (trial && (!best || trial.chiSquared < best.chiSquared)) best = trial
+  }
+  return best ? slideBreaks(data, best, prior, leastH) : null
+}
+
+/** Residual variance and correlation of a fit, the variance never below what the noise itself explains. */
+export function residualScale(fit: PiecewiseFit): { variance: number; inflation: number; lagOne: number } {
+  const unknowns = 2 + fit.ratesPerHour.length + fit.breaksH.length
+  const variance = Math.max(1, fit.chiSquared / Math.max(1, fit.points - unknowns + 1))
+  const lagOne = biasCorrectedCorrelation(lagOneCorrelation(fit.residuals), fit.points)
+  const counted = Math.min(0.9, lagOne)
+  return { variance, inflation: (1 + counted) / (1 - counted), lagOne }
+}
+
+/** Splits a fall at the instants where its rate changes. Null when not even one rate can be fitted. */
+export function segmentFall(
+  data: Binned,
+  prior: Prior,
+  leastH: number,
+  maxBreaks = MAX_BREAKS,
+): Segmented | null {
+  if (data.timeH.length < 4) return null
+  const first = fitPiecewise(data, data.timeH[0]!, [], prior, roughStart(data, prior.ppm))
+  if (!first) return null
+  const ladder = [first]
+  while (ladder.length <= maxBreaks && data.timeH.length >= 4 * ladder.length + 4) {
+    const last = ladder[ladder.length - 1]!
+    const next = addBreak(data, last, prior, leastH)
+    if (!next || last.chiSquared - next.chiSquared < 8) break
+    ladder.push(next)
+  }
+  const scale = residualScale(ladder[ladder.length - 1]!)
+  const asked = gainAsked(data.timeH.length) * scale.variance * Math.sqrt(scale.inflation)
+  let fit = ladder[ladder.length - 1]!
+  while (fit.breaksH.length > 0) {
+    let cheapest: PiecewiseFit | null = null
+    for (let k = 0; k < fit.breaksH.length; k++) {
+      const fewer = refit(
+        data,
+        fit.breaksH.filter((_, i) => i !== k),
+        prior,
+        fit,
+      )
+      if (!fewer) continue
+      if (!cheapest || fewer.chiSquared < cheapest.chiSquared) cheapest = fewer
+    }
+    if (!cheapest) break
+    const slid = slideBreaks(data, cheapest, prior, leastH)
+    if (slid.chiSquared - fit.chiSquared > asked) break
+    fit = slid
+  }
+  return { fit, ...residualScale(fit) }
+}
