@@ -16,6 +16,8 @@ export type ZonePlan = {
   demand?: { perHourPerPpm: number; ceilingPerHour: number }
   /** air that arrives from another zone (a corridor, or the rest of the building through the air handler) */
   exchange?: { zone: number; rate: Knot[] }
+  /** level at the start; 30 ppm above outdoors unless given */
+  startPpm?: number
   /** relative sd and correlation time of the slow wander of the outdoor rate (wind, filters, doors) */
   wander: { sd: number; correlationS: number }
 }
@@ -118,7 +120,7 @@ export function integrate(
     }
   })
   const hours = STEP_S / 3600
-  const now = zones.map(() => outdoor[0]! + 30)
+  const now = zones.map((zone) => zone.plan.startPpm ?? outdoor[0]! + 30)
   const guess = [...now]
   const advance = (z: number, i: number, neighbourPpm: number) => {
     const zone = zones[z]!

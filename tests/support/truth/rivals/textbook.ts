@@ -29,7 +29,7 @@ function lastDrop(rows: readonly Reading[], smooth: readonly number[], untilS: n
 }
 
 /** Straight line through ln(C − B): slope, its ordinary standard error, and R². */
-function logLine(rows: readonly Reading[], background: number) {
+export function logLine(rows: readonly Reading[], background: number) {
   const t0 = rows[0]!.clockS
   let n = 0
   let st = 0
