@@ -134,7 +134,10 @@ export const findings = pgTable(
   (t) => [uniqueIndex('findings_identity').on(t.buildingId, t.kind, t.subjectKey, t.methodVersion)],
 )
 
-/** One analysis of one building-local date for one set of inputs; the unique row makes a night run once. */
+/**
+ * One analysis of one building-local date for one set of inputs; the unique row makes a night run once. `carried` is what later nights
+ * and the findings lean on: quiet floors per sensor, supply stops per air handler, notes per room.
+ */
 export const nightRuns = pgTable(
   'night_runs',
   {
@@ -155,6 +158,7 @@ export const nightRuns = pgTable(
     roomsAnalysed: integer('rooms_analysed'),
     decaysFound: integer('decays_found'),
     error: text('error'),
+    carried: jsonb('carried').notNull().default({}),
   },
   (t) => [
     uniqueIndex('night_runs_identity').on(t.buildingId, t.localDate, t.methodVersion, t.inputHash),

@@ -1,0 +1,1 @@
+ALTER TABLE "night_runs" ADD COLUMN "carried" jsonb DEFAULT '{}'::jsonb NOT NULL;
