@@ -4,13 +4,8 @@ import { cache } from 'react'
 import { type BuildingSummary, listBuildingsInScope } from '@/db/queries/people'
 import { paths, safeNext } from '@/lib/paths'
 import { can, type Permission } from '@/lib/policy/permissions'
+import { BUILDING_COOKIE, PATH_HEADER } from './headers'
 import { contextOf, currentlySigned, type SignedContext } from './signed'
-
-/** Cookie that remembers the building someone works on, by slug. */
-export const BUILDING_COOKIE = 'ebbmark-building'
-
-/** Header in which proxy.ts tells a page its own address. */
-export const PATH_HEADER = 'x-ebbmark-path'
 
 /** A page's context: the person, what they may see, and the building they work on (null where the scope has none). */
 export type PageContext = SignedContext & {
