@@ -89,6 +89,16 @@ function prepare(
   return { input, record, floor, falls }
 }
 
+/** The floor that one night leaves in history: the lowest level kept for a while between local noon and the next noon. */
+export function nightFloor(
+  input: Pick<BuildingRoom, 'room' | 'series'>,
+  day: { date: string; dayStartS: number; dayEndS: number },
+): QuietFloor | null {
+  const record = cleanRecord(input.series, input.room.sensor)
+  const track = levelTrack(record, day.dayStartS + 43_200, day.dayEndS + 43_200)
+  return quietFloor(track, day.dayStartS + 43_200, day.dayEndS + 43_200, day.date)
+}
+
 /** Rate drops of every room of one air handler, to be compared. */
 function dropsOf(prepared: readonly Prepared[]): RateDrop[] {
   const drops: RateDrop[] = []

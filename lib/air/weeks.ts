@@ -1,3 +1,4 @@
+import { lagOneCorrelation } from '@/lib/math/autocorrelation'
 import { hodgesLehmann } from '@/lib/math/hodges-lehmann'
 import { NORMAL_975 } from '@/lib/math/normal'
 import { median } from '@/lib/math/robust'
@@ -72,15 +73,13 @@ const MOST_CORRELATION = 0.6
 function correlationWidening(values: readonly number[]): number {
   if (values.length < CORRELATION_MIN_DAYS || !values.every(Number.isFinite)) return 1
   const centre = median(values)
-  let lagged = 0
-  let total = 0
-  values.forEach((value, i) => {
-    total += (value - centre) ** 2
-    if (i > 0) lagged += (value - centre) * (values[i - 1]! - centre)
-  })
-  const correlation = Math.min(MOST_CORRELATION, total > 0 ? lagged / total : 0)
+  const correlation = Math.min(MOST_CORRELATION, lagOneCorrelation(values.map((value) => value - centre)))
   return correlation > 0 ? Math.sqrt((1 + correlation) / (1 - correlation)) : 1
 }
+
+/** A limit moved away from the location by a factor; an open end stays open. */
+const stretch = (location: number, limit: number, factor: number) =>
+  Number.isFinite(location) ? location + factor * (limit - location) : limit
 
 /** Location and scatter limits on ln(rate). A day known only within limits enters once with each, which is exact for monotone limits. */
 function locate(days: readonly DayRate[], sd: number | null) {
@@ -94,8 +93,8 @@ function locate(days: readonly DayRate[], sd: number | null) {
     const widening = correlationWidening(lows)
     return {
       location: settled ? (below.location + above.location) / 2 : null,
-      low: below.location - widening * (below.location - below.low!),
-      high: above.location + widening * (above.high! - above.location),
+      low: stretch(below.location, below.low!, widening),
+      high: stretch(above.location, above.high!, widening),
       method: settled ? ('signed-rank' as const) : ('bounds' as const),
     }
   }

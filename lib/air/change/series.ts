@@ -42,14 +42,23 @@ function sdFromDifferences(values: readonly number[], lags: readonly number[]): 
   return differences.length === 0 ? 0 : (1.4826 * median(differences)) / Math.SQRT2
 }
 
+/** sd about the running median of fifteen: it follows steps, and odd nights that keep coming count in full. */
+function sdAboutRunningMedian(values: readonly number[]): number {
+  const squares = values.map((value, i) => (value - median(values.slice(Math.max(0, i - 7), i + 8))) ** 2)
+  return Math.sqrt(squares.reduce((sum, square) => sum + square, 0) / Math.max(1, values.length - 1))
+}
+
+/** Lags over which a day no longer resembles another; short series cannot spare so many differences to one step. */
+const farLags = (n: number) => (n >= 28 ? [5, 6, 7] : [2, 3])
+
 /**
- * Day-to-day noise that steps and drift hardly touch: sd from differences five to seven days apart, correlation from how much smaller
- * the differences of neighbouring days are (1 − φ = their ratio squared).
+ * Day-to-day noise that steps and drift hardly touch: sd from differences of far days or about the running median, whichever is larger;
+ * correlation from how much smaller the differences of neighbouring days are (1 − φ = their ratio squared).
  */
 export function dayNoise(values: readonly number[]): DayNoise {
   const near = sdFromDifferences(values, [1])
-  const far = sdFromDifferences(values, [5, 6, 7])
-  const sd = Math.max(LEAST_SD, near, far)
-  const correlation = Math.min(0.8, Math.max(0, 1 - (near / sd) ** 2))
+  const far = sdFromDifferences(values, farLags(values.length))
+  const correlation = far > near ? Math.min(0.8, 1 - (near / far) ** 2) : 0
+  const sd = Math.max(LEAST_SD, near, far, sdAboutRunningMedian(values))
   return { sd, correlation, longRunVariance: (sd ** 2 * (1 + correlation)) / (1 - correlation) }
 }

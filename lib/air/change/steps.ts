@@ -1,3 +1,4 @@
+import { binomialUpperTail } from '@/lib/math/binomial'
 import { median } from '@/lib/math/robust'
 import { studentTQuantile } from '@/lib/math/student-t'
 import { addNights } from '../nights'
@@ -34,7 +35,9 @@ export type StepOptions = {
 const PENALTY_PER_LN_N = 3
 const CONFIRM_SD = 3.7
 /** Share of the days on each side that must lie nearer to their own side's level. */
-const CONFIRM_SHARE = 0.75
+const CONFIRM_SHARE = 0.8
+/** Largest expected number of such stretches that a mixture of two kinds of day would show by chance. */
+const CONFIRM_CHANCE = 0.02
 /** Days on each side that speak for the size of a step; older ones may belong to another season. */
 const SIDE_DAYS = 60
 /** 95 % half-width of a change's date is this times variance / step² (Bai 1997, symmetric quantile, from memory). */
@@ -54,10 +57,25 @@ function sideOf(values: readonly number[], from: number, to: number): Side {
   return { from, to, level: median(values.slice(from, to)) }
 }
 
-const nearerShare = (values: readonly number[], side: Side, other: Side) =>
-  values.slice(side.from, side.to).filter((y) => Math.abs(y - side.level) < Math.abs(y - other.level))
-    .length /
-  (side.to - side.from)
+/** Days of `side` that lie nearer to the level of `other` than to their own. */
+const strayDays = (values: readonly number[], side: Side, other: Side) =>
+  values.slice(side.from, side.to).filter((y) => Math.abs(y - other.level) < Math.abs(y - side.level)).length
+
+/**
+ * Whether one side is more than a lucky run of days that the other side shows now and then (a door, a fan left off): the run's binomial
+ * chance at the other side's share of such days, times the places where a run could start.
+ */
+function isBeyondMixture(values: readonly number[], side: Side, other: Side): boolean {
+  const days = side.to - side.from
+  const otherDays = other.to - other.from
+  const share = (strayDays(values, other, side) + 0.5) / (otherDays + 1)
+  const chance = binomialUpperTail(days - strayDays(values, side, other), days, share)
+  return chance * values.length < CONFIRM_CHANCE
+}
+
+const isSeparate = (values: readonly number[], side: Side, other: Side) =>
+  strayDays(values, side, other) <= (1 - CONFIRM_SHARE) * (side.to - side.from) &&
+  isBeyondMixture(values, side, other)
 
 /** Size and standing of the change at `at` between its neighbouring changes. */
 function measure(
@@ -76,8 +94,8 @@ function measure(
   const sound =
     Math.abs(stepLn) >= least &&
     Math.abs(stepLn) >= CONFIRM_SD * standardError &&
-    nearerShare(values, before, after) >= CONFIRM_SHARE &&
-    nearerShare(values, after, before) >= CONFIRM_SHARE
+    isSeparate(values, before, after) &&
+    isSeparate(values, after, before)
   return { at, before, after, stepLn, standardError, sound }
 }
 
