@@ -119,7 +119,7 @@ export function draftRoom(setting: Setting, wish: Wish = {}): Draft {
     lastLeaveS,
     stays: peopleOf(setting, wish, use, persons, lastLeaveS),
     outdoorRate: knots,
-    wander: { sd: random.uniform(0.01, 0.04), correlationS: random.uniform(600, 3600) },
+    wander: { sd: random.uniform(0.005, 0.025), correlationS: random.uniform(600, 3600) },
     sensor: usualSensor(random, wish),
     flaws: { ...NO_FLAWS, missing: [], stuck: [], clock: [] },
     declared,
