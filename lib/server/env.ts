@@ -20,6 +20,7 @@ const schema = z.object({
   PORT: port(3000),
   MQTT_HOST: z.string().default('127.0.0.1'),
   MQTT_PORT: port(1883),
+  MQTT_SENSOR_READINGS_PER_S: z.coerce.number().positive().default(100),
   SMTP_HOST: z.string().default('127.0.0.1'),
   SMTP_PORT: port(1025),
   SMTP_USER: z.string().optional(),
@@ -51,6 +52,12 @@ export function env(): Env {
   // biome-ignore lint/style/noProcessEnv: the one place that reads it
   cached ??= parseEnv(process.env)
   return cached
+}
+
+/** The data folder alone, for commands that need no database. */
+export function dataDir(): string {
+  // biome-ignore lint/style/noProcessEnv: the one place that reads it
+  return schema.shape.EBBMARK_DATA_DIR.parse(process.env.EBBMARK_DATA_DIR || undefined)
 }
 
 /** Where people reach the web application: PUBLIC_URL, else the loopback address. */

@@ -107,7 +107,7 @@ export class SensorBank {
     const { minute } = this.out
     this.world.scenario.sensors.forEach((sensor, i) => {
       this.out.co2Ppm[i] = this.report(sensor, i, minute)
-      this.warm(sensor, i, minute * 60)
+      this.warm(i, minute * 60)
     })
     return this.out
   }
@@ -136,7 +136,7 @@ export class SensorBank {
     return indicated(ppm, sensor.model.resolutionPpm, sensor.model.rangeMaxPpm)
   }
 
-  private warm(sensor: SensorPlan, i: number, timeS: number): void {
+  private warm(i: number, timeS: number): void {
     const { seed } = this.world
     const zone = this.zone[i]!
     const outdoorC = outdoorTemperatureC(seed, timeS)
