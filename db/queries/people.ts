@@ -1,4 +1,5 @@
 import { and, asc, eq, exists } from 'drizzle-orm'
+import { ROLES, type Role } from '@/lib/policy/roles'
 import type { Tx } from '../client'
 import { buildings, memberships, tenancies, users } from '../schema'
 
@@ -52,4 +53,15 @@ export async function getTenancyName(
 ): Promise<string | undefined> {
   const [row] = await tx.select({ name: tenancies.name }).from(tenancies).where(eq(tenancies.id, tenancyId))
   return row?.name
+}
+
+/** The people of the demo, in the order in which they were added. */
+export async function listDemoPeople(tx: Tx): Promise<{ email: string; name: string; roles: Role[] }[]> {
+  const rows = await tx
+    .select({ email: users.email, name: users.name, roles: memberships.roles })
+    .from(users)
+    .innerJoin(memberships, eq(memberships.userId, users.id))
+    .where(eq(users.isDemo, true))
+    .orderBy(asc(users.id))
+  return rows.map((row) => ({ ...row, roles: ROLES.filter((role) => row.roles.includes(role)) }))
 }

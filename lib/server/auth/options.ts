@@ -7,6 +7,7 @@ import { authSecret } from '../env'
 import { log } from '../log'
 import { addressIn } from './address'
 import { SESSION_SECONDS, sessionCookie, usesSecureCookies } from './cookie'
+import { EMAIL_LIMIT, waitWords, wrongWords } from './limits'
 import { readSession } from './session'
 import { signInWithPassword, signOut } from './sign-in'
 
@@ -14,6 +15,15 @@ import { signInWithPassword, signOut } from './sign-in'
 const errorCode = (error: unknown) => {
   if (!(error instanceof Refusal)) return 'failed'
   return error.kind === 'too-many' ? `wait-${error.retryAfterSeconds}` : 'wrong'
+}
+
+/** The words for a code that next-auth put into the sign-in page's address; undefined where there is nothing to say. */
+export function redirectedWords(code: string | undefined): string | undefined {
+  if (code === undefined) return undefined
+  const wait = /^wait-(\d{1,5})$/.exec(code)
+  if (wait) return `Too many wrong tries. The next one is possible in ${waitWords(Number(wait[1]))}.`
+  if (code === 'wrong' || code === 'CredentialsSignin') return wrongWords(EMAIL_LIMIT.tries)
+  return 'The sign-in did not go through, and nothing was changed. Try again.'
 }
 
 const passwordProvider = () =>
