@@ -59,11 +59,7 @@ export async function registerSensor(
     )
   }
   const lead = form.lead && roomId !== null && form.position === 'room'
-  if (lead)
-    await tx
-      .update(placements)
-      .set({ lead: false })
-      .where(and(eq(placements.roomId, roomId), eq(placements.lead, true), isNull(placements.toAt)))
+  if (lead) await endEarlierLead(tx, roomId, now)
   await tx.insert(placements).values({
     organizationId: actor.organizationId,
     buildingId,
@@ -90,6 +86,20 @@ export async function registerSensor(
   })
   await notifyLive(tx, 'sensors', [buildingId])
   return { deviceId: form.deviceId, secret }
+}
+
+/** The room's lead so far stays where it hangs, but no longer leads; what it led until now is kept. */
+async function endEarlierLead(tx: Tx, roomId: number, now: Date): Promise<void> {
+  const [earlier] = await tx
+    .update(placements)
+    .set({ toAt: now })
+    .where(and(eq(placements.roomId, roomId), eq(placements.lead, true), isNull(placements.toAt)))
+    .returning()
+  if (!earlier) return
+  const { organizationId, buildingId, sensorId, position } = earlier
+  await tx
+    .insert(placements)
+    .values({ organizationId, buildingId, sensorId, roomId, position, lead: false, fromAt: now })
 }
 
 async function requireRoom(tx: Tx, buildingId: number, publicId: string): Promise<number> {
