@@ -33,7 +33,7 @@ export type StepOptions = {
 
 /** Penalty per change in units of ln n, and the standard errors a step must measure: set so that a year without change stays quiet. */
 const PENALTY_PER_LN_N = 3
-const CONFIRM_SD = 3.7
+const CONFIRM_SD = 3.3
 /** Share of the days on each side that must lie nearer to their own side's level. */
 const CONFIRM_SHARE = 0.8
 /** Largest expected number of such stretches that a mixture of two kinds of day would show by chance. */
@@ -62,20 +62,21 @@ const strayDays = (values: readonly number[], side: Side, other: Side) =>
   values.slice(side.from, side.to).filter((y) => Math.abs(y - other.level) < Math.abs(y - side.level)).length
 
 /**
- * Whether one side is more than a lucky run of days that the other side shows now and then (a door, a fan left off): the run's binomial
- * chance at the other side's share of such days, times the places where a run could start.
+ * Whether one side is more than a lucky run of days that come now and then anyway (a door, a fan left off): the run's binomial chance
+ * at the share of such days in the rest of the series, times the places where a run could start.
  */
 function isBeyondMixture(values: readonly number[], side: Side, other: Side): boolean {
   const days = side.to - side.from
-  const otherDays = other.to - other.from
-  const share = (strayDays(values, other, side) + 0.5) / (otherDays + 1)
-  const chance = binomialUpperTail(days - strayDays(values, side, other), days, share)
-  return chance * values.length < CONFIRM_CHANCE
+  const rest = [...values.slice(0, side.from), ...values.slice(side.to)]
+  const like = rest.filter((y) => Math.abs(y - side.level) < Math.abs(y - other.level)).length
+  const share = (like + 0.5) / (rest.length + 1)
+  return (
+    binomialUpperTail(days - strayDays(values, side, other), days, share) * values.length < CONFIRM_CHANCE
+  )
 }
 
 const isSeparate = (values: readonly number[], side: Side, other: Side) =>
-  strayDays(values, side, other) <= (1 - CONFIRM_SHARE) * (side.to - side.from) &&
-  isBeyondMixture(values, side, other)
+  strayDays(values, side, other) <= (1 - CONFIRM_SHARE) * (side.to - side.from)
 
 /** Size and standing of the change at `at` between its neighbouring changes. */
 function measure(
@@ -95,7 +96,8 @@ function measure(
     Math.abs(stepLn) >= least &&
     Math.abs(stepLn) >= CONFIRM_SD * standardError &&
     isSeparate(values, before, after) &&
-    isSeparate(values, after, before)
+    isSeparate(values, after, before) &&
+    (isBeyondMixture(values, before, after) || isBeyondMixture(values, after, before))
   return { at, before, after, stepLn, standardError, sound }
 }
 
@@ -158,10 +160,11 @@ function describe(days: readonly RateDay[], noise: DayNoise, found: Measured): R
 export function findRateSteps(days: readonly RateDay[], options: StepOptions = {}): RateStep[] {
   const leastDays = options.leastDays ?? 4
   if (days.length < 2 * leastDays) return []
-  const values = withoutOddDays(withoutWeekendPattern(days))
-  const noise = dayNoise(values)
+  const values = withoutWeekendPattern(days)
+  const calmed = withoutOddDays(values)
+  const noise = dayNoise(calmed)
   const penalty = PENALTY_PER_LN_N * Math.log(days.length)
-  const candidates = segment(values, noise.longRunVariance, penalty, leastDays)
+  const candidates = segment(calmed, noise.longRunVariance, penalty, leastDays)
   return confirm(values, noise, candidates, options.leastStepLn ?? 0.12).map((found) =>
     describe(days, noise, found),
   )
