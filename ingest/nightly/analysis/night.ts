@@ -1,0 +1,57 @@
+import type { FoundDecay, NightResult } from '@/db/changes/nights'
+import type { Carried } from '@/db/queries/nights'
+import { analyseBuildingDay, type RoomDay } from '@/lib/air/analyse-building'
+import { localClock } from '@/lib/time'
+import { type AnalysedSensor, type NightMaterial, nightInputs } from './inputs'
+
+export type AnalysedNight = Pick<NightResult, 'inputHash' | 'found' | 'carried' | 'roomsAnalysed'>
+
+type Pair = { sensor: AnalysedSensor; result: RoomDay }
+
+const clockSeconds = (epochS: number, timeZone: string) => {
+  const [hours, minutes] = localClock(epochS, timeZone).split(':').map(Number) as [number, number]
+  return hours * 3600 + minutes * 60 + (epochS % 60)
+}
+
+function carriedOf(pairs: readonly Pair[], { plan }: NightMaterial): Carried {
+  const { timeZone } = plan.building
+  const quietFloors: NonNullable<Carried['quietFloors']> = {}
+  const supplyStops: NonNullable<Carried['supplyStops']> = {}
+  const notes: NonNullable<Carried['notes']> = []
+  for (const { sensor, result } of pairs) {
+    if (result.quietFloor) quietFloors[sensor.sensorId] = result.quietFloor
+    const handler = plan.rooms.find((room) => room.id === sensor.roomId)?.airHandlerId
+    if (handler && result.supplyStops.length > 0)
+      supplyStops[handler] = result.supplyStops.map((stop) => ({
+        ...stop,
+        clockS: clockSeconds(stop.atS, timeZone),
+      }))
+    notes.push(...result.notes.map((note) => ({ roomId: sensor.roomId, sensorId: sensor.sensorId, ...note })))
+  }
+  return { quietFloors, supplyStops, notes }
+}
+
+/** The inputs' hash, without the analysis: enough to tell that a night has nothing new. */
+export function analyseNight(
+  material: NightMaterial,
+  knownHash: string | null,
+): AnalysedNight | { inputHash: string } {
+  const { day, sensors, inputHash } = nightInputs(material)
+  if (inputHash === knownHash) return { inputHash }
+  const results = analyseBuildingDay(day)
+  if (results.length !== sensors.length)
+    throw new Error(`the analysis of ${day.date} answered for ${results.length} of ${sensors.length} sensors`)
+  const pairs = results.map((result, i) => ({ sensor: sensors[i] as AnalysedSensor, result }))
+  const found: FoundDecay[] = pairs
+    .filter(({ sensor }) => sensor.stores)
+    .flatMap(({ sensor, result }) =>
+      result.decays.map((decay) => ({
+        roomId: sensor.roomId,
+        sensorId: sensor.sensorId,
+        lead: sensor.lead,
+        decay,
+      })),
+    )
+  const rooms = new Set(sensors.filter((sensor) => sensor.stores).map((sensor) => sensor.roomId))
+  return { inputHash, found, carried: carriedOf(pairs, material), roomsAnalysed: rooms.size }
+}
