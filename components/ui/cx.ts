@@ -1,4 +1,4 @@
 /** Joins class names, leaving out what is not there. */
-export function cx(...names: (string | false | null | undefined)[]): string {
-  return names.filter(Boolean).join(' ')
+export function cx(...names: unknown[]): string {
+  return names.filter((name) => typeof name === 'string' && name !== '').join(' ')
 }
