@@ -79,6 +79,15 @@ function trueTime(room: TruthRoom, clockS: number): number {
   return nearest.trueS
 }
 
+/** Air from a neighbour that nobody measures, and the answer says so: outdoor and total cannot be told apart. */
+function unknowable(room: TruthRoom, answer: Answer): boolean {
+  if (!room.draft.neighbour || room.draft.neighbour.measured) return false
+  return (
+    answer.outdoor_ach_low != null ||
+    answer.reasons.some((r) => r === 'neighbour-coupled' || r === 'recirculation-possible')
+  )
+}
+
 /** The rate that `ach` names: total replacement by lower-CO2 air where the room draws on a known neighbour or on return air. */
 function referenceRate(room: TruthRoom, truth: Interval, answer: Answer): number {
   if (!room.draft.neighbour) return truth.outdoorPerHour
@@ -86,8 +95,8 @@ function referenceRate(room: TruthRoom, truth: Interval, answer: Answer): number
     answer.outdoor_ach_low != null ||
     answer.reasons.some((r) => r === 'neighbour-coupled' || r === 'recirculation-possible')
   if (!saysSo) return truth.outdoorPerHour
-  if (room.draft.neighbour.measured) return truth.totalPerHour
-  // nobody can tell the two apart here: any figure between them is a fair dilution rate
+  if (!unknowable(room, answer)) return truth.totalPerHour
+  // any figure between the two is a fair dilution rate; whether an interval holds it is then no question
   return Math.min(truth.totalPerHour, Math.max(truth.outdoorPerHour, answer.ach ?? truth.totalPerHour))
 }
 
@@ -122,7 +131,7 @@ function judgeOne(building: TruthBuilding, room: TruthRoom, evenings: Evening[],
       evenings.find((e) => overlapShare(startS, endS, e.spell.fromS - 300, e.spell.steadyToS + 300) > 0.5) ??
       null,
     error,
-    covered: ends ? rate >= answer.ach_low! && rate <= answer.ach_high! : null,
+    covered: ends && !unknowable(room, answer) ? rate >= answer.ach_low! && rate <= answer.ach_high! : null,
     halfWidth: ends ? (answer.ach_high! - answer.ach_low!) / 2 / answer.ach! : null,
     people,
     mixed,

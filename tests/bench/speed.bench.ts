@@ -1,0 +1,55 @@
+import { cpus } from 'node:os'
+import { quantile } from '../support/truth/summary'
+import { options, percent, printTable, wholeNumber, writeReport } from './report'
+import { compareFits } from './speed/fits'
+import { bulk, cpuMsOf, oneMinuteRoomDays } from './speed/room-days'
+
+const chosen = options({ seed: '1', 'room-days': '10000' })
+const seed = wholeNumber('seed', chosen.seed, 0)
+const many = wholeNumber('room-days', chosen['room-days'], 100)
+const few = Math.round(many / 10)
+
+console.log(`${cpus()[0]?.model ?? 'unknown processor'}, Node ${process.version}`)
+const days = oneMinuteRoomDays(seed, 2, 10)
+for (const day of days.slice(0, 60)) cpuMsOf(day)
+const cpuMs = days.map(cpuMsOf)
+const perRoomDay = { median: quantile(cpuMs, 0.5), p95: quantile(cpuMs, 0.95), most: Math.max(...cpuMs) }
+console.log(`\nCPU of one room-day at one-minute steps, whole analysis (${days.length} different ones)`)
+printTable(
+  ['', 'median ms', '95 % ms', 'most ms'],
+  [['one room-day', perRoomDay.median.toFixed(2), perRoomDay.p95.toFixed(2), perRoomDay.most.toFixed(2)]],
+)
+
+globalThis.gc?.()
+const small = bulk(days, few)
+globalThis.gc?.()
+const large = bulk(days, many)
+const growth = large.cpuSeconds / small.cpuSeconds / (many / few)
+console.log('\nmany room-days, one after the other')
+printTable(
+  ['room-days', 'seconds', 'CPU s', 'decays', 'peak memory MB'],
+  [small, large].map((b) => [
+    String(b.roomDays),
+    b.seconds.toFixed(2),
+    b.cpuSeconds.toFixed(2),
+    String(b.decays),
+    b.peakMb.toFixed(0),
+  ]),
+)
+console.log(`time grew ${growth.toFixed(2)} times as much as the number of room-days (1 is linear)`)
+
+const fits = compareFits(seed)
+const own = fits[0]!
+console.log('\nfits of C = B + E exp(−A t), 120 readings, three unknowns, the same start')
+printTable(
+  ['program', 'fits/s', 'of Ebbmark', 'rate differs by at most', 'failed'],
+  fits.map((f) => [
+    f.name,
+    f.fitsPerSecond.toFixed(0),
+    (f.fitsPerSecond / own.fitsPerSecond).toFixed(3),
+    `${percent(f.largestDifference, 5)} %`,
+    String(f.failures),
+  ]),
+)
+if (fits.length < 3) console.log('SciPy is not installed (Debian: python3-scipy): left out')
+writeReport('speed', { node: process.version, perRoomDayMs: perRoomDay, small, large, growth, fits })
