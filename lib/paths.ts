@@ -19,6 +19,7 @@ export const paths = {
   api: {
     health: () => '/api/health',
     live: () => '/api/v1/live',
+    airChange: () => '/api/v1/air-change',
   },
 } as const
 
