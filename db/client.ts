@@ -29,6 +29,8 @@ export function openDatabase(options: {
   url: string
   poolSize?: number
   applicationName?: string
+  /** a query that has no answer by then fails and its connection is dropped: for processes that must not hang with a database that hangs */
+  queryTimeoutMs?: number
   onError?: (error: Error) => void
 }): Database {
   const pool = new pg.Pool({
@@ -37,6 +39,8 @@ export function openDatabase(options: {
     application_name: options.applicationName ?? 'ebbmark',
     connectionTimeoutMillis: 5000,
     idleTimeoutMillis: 30_000,
+    keepAlive: true,
+    query_timeout: options.queryTimeoutMs,
   })
   pool.on('error', (error) => options.onError?.(error))
   const takesRole = new URL(options.url).username !== appRole
