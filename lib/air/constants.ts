@@ -27,6 +27,12 @@ export const DETECTION = {
   fitBins: 120,
 } as const
 
+/**
+ * Imperfect mixing as a sensor sees it: standard deviation as a share of the excess, correlation time, and how many blocks of residuals that
+ * expectation is worth against a record's own (chosen; typical of one-minute records in occupied rooms).
+ */
+export const MIXING = { share: 0.008, correlationS: 360, priorDegrees: 8, leastVariance: 0.15 } as const
+
 /** Gates of a usable decay (practice; methods of tracer decay, see E741 and ISO 12569 for the two-point minimum A T = 1). */
 export const GATES = {
   /** smallest excess at the start, ppm, and in standard uncertainties of the background and the noise */

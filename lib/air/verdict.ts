@@ -1,4 +1,5 @@
-import { addNights, nightsBetween } from './nights'
+import { addDays } from '@/lib/time'
+import { nightsBetween } from './nights'
 import type { AirSystem, Mode, ModeOrigin } from './types'
 import { type NotProvenCode, type VerdictReason, verdictReason } from './verdict-reasons'
 import { type CombinedRate, combineDays, isUsable, type RateInterval, type RoomEstimate } from './weeks'
@@ -64,7 +65,7 @@ const scale = (interval: RateInterval, factor: number): FlowInterval => {
 
 /** First date of the window: 28 local days ending on `throughNight`, or the last change if that is later. */
 function windowStart(input: VerdictInput): string {
-  const start = addNights(input.throughNight, 1 - VERDICT_DAYS)
+  const start = addDays(input.throughNight, 1 - VERDICT_DAYS)
   const change = input.lastChangeNight
   return change !== null && nightsBetween(start, change) > 0 ? change : start
 }

@@ -1,5 +1,5 @@
 import { median } from '@/lib/math/robust'
-import { isoWeekday } from '../nights'
+import { isoWeekday } from '@/lib/time'
 
 /** One local day of one room in one mode: its date and ln of its rate (1/h). */
 export type RateDay = { night: string; lnRate: number }

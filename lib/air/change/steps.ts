@@ -1,7 +1,7 @@
 import { binomialUpperTail } from '@/lib/math/binomial'
 import { median } from '@/lib/math/robust'
 import { studentTQuantile } from '@/lib/math/student-t'
-import { addNights } from '../nights'
+import { addDays } from '@/lib/time'
 import { segment } from './segment'
 import { type DayNoise, dayNoise, type RateDay, withoutOddDays, withoutWeekendPattern } from './series'
 
@@ -137,7 +137,7 @@ function describe(days: readonly RateDay[], noise: DayNoise, found: Measured): R
   return {
     onNight,
     // a change may lie in a stretch without decays: then it began the day after the last night of the old rate
-    earliestNight: addNights(nightAt(Math.max(at - 1, at - dateHalf)), dateHalf > 1 ? 1 - dateHalf : 1),
+    earliestNight: addDays(nightAt(Math.max(at - 1, at - dateHalf)), dateHalf > 1 ? 1 - dateHalf : 1),
     latestNight: nightAt(at + dateHalf - 1),
     ratio,
     ratioLow: Math.exp(stepLn - half),

@@ -1,8 +1,8 @@
 /** From a fit to a rate with a 95 % interval: regression with correlated residuals, background, and choice of model. */
-import { effectiveSampleSize } from '@/lib/math/autocorrelation'
+import { biasCorrectedCorrelation, lagOneCorrelation } from '@/lib/math/autocorrelation'
 import { t95 } from '@/lib/math/student-t'
+import { longRunScale } from './noise'
 import { type Binned, fitPiecewise, type PiecewiseFit, type Prior } from './piecewise'
-import { residualScale } from './segments'
 
 export type RateEstimate = {
   ratePerHour: number
@@ -21,16 +21,15 @@ export function scaledBins(data: Binned, factor: number): Binned {
 
 /** Refits with the noise that the residuals show, so that readings and the background's prior are weighed rightly. */
 export function reweighed(data: Binned, fit: PiecewiseFit, prior: Prior | null) {
-  const scale = residualScale(fit)
-  const factor = Math.sqrt(scale.variance * scale.inflation)
+  const scale = longRunScale(fit, data)
+  const factor = Math.sqrt(scale.variance)
   const start = {
     logStartExcess: fit.logStartExcess,
     ratesPerHour: fit.ratesPerHour,
     backgroundPpm: fit.backgroundPpm,
   }
-  const again =
-    factor > 1.02 ? fitPiecewise(scaledBins(data, factor), fit.fromH, fit.breaksH, prior, start, 10) : fit
-  return { fit: again ?? fit, ...scale, factor: again ? factor : 1 }
+  const again = fitPiecewise(scaledBins(data, factor), fit.fromH, fit.breaksH, prior, start, 10)
+  return { fit: again ?? fit, scale, factor: again ? factor : 1 }
 }
 
 /** Standard uncertainty of ln A for rate k: [with the background known, with it as uncertain as it is]. */
@@ -54,22 +53,20 @@ export function rateEstimate(
   weighed: ReturnType<typeof reweighed>,
   k: number,
   model: number,
-  medianSdPpm: number,
+  residualSdPpm: number,
 ): RateEstimate {
   const { fit } = weighed
   const ratePerHour = fit.ratesPerHour[k]!
   const { regression, background } = logRateUncertainty(fit, k)
-  const effectivePoints = Math.max(3, effectiveSampleSize(fit.points, Math.max(0, weighed.lagOne)))
-  const unknowns = 2 + fit.breaksH.length
-  const factor = t95(Math.max(2, effectivePoints - unknowns))
-  const half = Math.hypot(factor * regression, 1.96 * background, 1.96 * model)
+  const { degreesOfFreedom } = weighed.scale
+  const half = Math.hypot(t95(degreesOfFreedom) * regression, 1.96 * background, 1.96 * model)
   return {
     ratePerHour,
     lowPerHour: ratePerHour * Math.exp(-half),
     highPerHour: ratePerHour * Math.exp(half),
     parts: { regression, background, model },
-    lagOne: weighed.lagOne,
-    effectivePoints,
-    residualSdPpm: medianSdPpm * Math.sqrt(weighed.variance),
+    lagOne: biasCorrectedCorrelation(lagOneCorrelation(fit.residuals), fit.points),
+    effectivePoints: degreesOfFreedom,
+    residualSdPpm,
   }
 }

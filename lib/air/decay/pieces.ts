@@ -15,7 +15,7 @@ export type Piece = {
 
 /** The pieces of a fit with the standard deviation of each rate, correlated residuals counted. */
 export function piecesOf(segmented: Segmented, endH: number): Piece[] {
-  const { fit, variance, inflation } = segmented
+  const { fit, scale } = segmented
   const size = fit.ratesPerHour.length + 2
   const edges = [fit.fromH, ...fit.breaksH, endH]
   const pieces: Piece[] = []
@@ -28,7 +28,7 @@ export function piecesOf(segmented: Segmented, endH: number): Piece[] {
       fromH: edges[k]!,
       toH: edges[k + 1]!,
       ratePerHour,
-      sdPerHour: Math.sqrt(own * variance * inflation),
+      sdPerHour: Math.sqrt(own * scale.variance),
       startExcessPpm: start,
       endExcessPpm: Math.exp(logExcess),
       role: 'empty',

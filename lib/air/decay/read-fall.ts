@@ -6,8 +6,9 @@ import { binRecord, sliceBins } from './bins'
 import type { CleanRecord } from './clean'
 import type { Fall } from './falls'
 import { type RateEstimate, rateEstimate, reweighed } from './interval'
+import { withMixing } from './noise'
 import { assignRoles, emptyRuns, type Piece, piecesOf } from './pieces'
-import { type Binned, fitPiecewise, type PiecewiseFit, type Prior } from './piecewise'
+import { type Binned, fitPiecewise, type PiecewiseFit, type Prior, piecewiseValue } from './piecewise'
 import { segmentFall } from './segments'
 
 /** One rate over one stretch of an empty room. */
@@ -30,16 +31,6 @@ export type FallReading = {
   peopleInside: boolean
   pieces: Piece[]
   data: Binned
-}
-
-/** A share of the excess that imperfect mixing may move a reading by. */
-const MIXING_SHARE = 0.003
-
-function withMixing(data: Binned, backgroundPpm: number): Binned {
-  const sdPpm = data.sdPpm.map((sd, i) =>
-    Math.hypot(sd, MIXING_SHARE * Math.max(0, data.ppm[i]! - backgroundPpm)),
-  )
-  return { ...data, sdPpm }
 }
 
 /** Where a fall may end: a while after the level has come within noise of the background. */
@@ -88,6 +79,13 @@ function changeInterval(data: Binned, fit: PiecewiseFit, prior: Prior, index: nu
   }
 }
 
+/** Root mean square distance between readings and fit, ppm. */
+function residualSd(data: Binned, fit: PiecewiseFit): number {
+  let sum = 0
+  for (let i = 0; i < data.timeH.length; i++) sum += (data.ppm[i]! - piecewiseValue(fit, data.timeH[i]!)) ** 2
+  return Math.sqrt(sum / Math.max(1, data.timeH.length - 3))
+}
+
 /** Fits one empty run jointly: every piece its own rate, one background. */
 function readRun(data: Binned, pieces: readonly Piece[], prior: Prior, originS: number): Reading[] {
   const fromH = pieces[0]!.fromH
@@ -108,7 +106,7 @@ function readRun(data: Binned, pieces: readonly Piece[], prior: Prior, originS: 
     fromS: originS + piece.fromH * 3600,
     toS: originS + piece.toH * 3600,
     piece,
-    estimate: rateEstimate(weighed, k, 0.006, median(part.sdPpm)),
+    estimate: rateEstimate(weighed, k, 0.008, residualSd(part, weighed.fit)),
     fit: weighed.fit,
     data: part,
     changeAtStart: changes[k - 1] ?? null,
@@ -122,7 +120,7 @@ export function readFall(record: CleanRecord, fall: Fall, background: Background
   const width = Math.max(record.stepS, (toS - fall.fromS) / DETECTION.fitBins)
   const raw = binRecord(record, fall.fromS, toS, width, fall.fromS)
   if (raw.timeH.length < 4) return null
-  const data = withMixing(raw, background.ppm)
+  const data = withMixing(raw, background.ppm, width)
   const prior = { ppm: background.ppm, sdPpm: background.standardUncertaintyPpm }
   const leastH = Math.max((2.5 * width) / 3600, 0.06)
   const segmented = segmentFall(data, prior, leastH)

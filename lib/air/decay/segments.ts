@@ -1,17 +1,11 @@
 /** Where the rate changes inside a fall: breaks added while they earn their keep, then taken away again while nothing is lost. */
-import { biasCorrectedCorrelation, lagOneCorrelation } from '@/lib/math/autocorrelation'
 import { invertSymmetric } from '@/lib/math/linear'
+import { longRunScale, type Scale } from './noise'
 import { type Binned, fitPiecewise, type PiecewiseFit, type Prior, roughStart } from './piecewise'
 
-export type Segmented = {
-  fit: PiecewiseFit
-  /** residual variance (1 when the noise is as expected) and what correlation makes of it */
-  variance: number
-  inflation: number
-  lagOne: number
-}
+export type Segmented = { fit: PiecewiseFit; scale: Scale }
 
-const MAX_BREAKS = 4
+const MAX_BREAKS = 3
 /** Gain in chi squared (per unit variance) that one more break must bring: two unknowns at 2 ln n and a margin of six. */
 const gainAsked = (n: number) => 2 * Math.log(Math.max(8, n)) + 6
 
@@ -150,15 +144,6 @@ function addBreak(data: Binned, fit: PiecewiseFit, prior: Prior | null, leastH: 
   return best ? slideBreaks(data, best, prior, leastH) : null
 }
 
-/** Residual variance and correlation of a fit, the variance never below what the noise itself explains. */
-export function residualScale(fit: PiecewiseFit): { variance: number; inflation: number; lagOne: number } {
-  const unknowns = 2 + fit.ratesPerHour.length + fit.breaksH.length
-  const variance = Math.max(1, fit.chiSquared / Math.max(1, fit.points - unknowns + 1))
-  const lagOne = biasCorrectedCorrelation(lagOneCorrelation(fit.residuals), fit.points)
-  const counted = Math.min(0.9, lagOne)
-  return { variance, inflation: (1 + counted) / (1 - counted), lagOne }
-}
-
 /** Splits a fall at the instants where its rate changes. Null when not even one rate can be fitted. */
 export function segmentFall(
   data: Binned,
@@ -176,8 +161,8 @@ export function segmentFall(
     if (!next || last.chiSquared - next.chiSquared < 8) break
     ladder.push(next)
   }
-  const scale = residualScale(ladder[ladder.length - 1]!)
-  const asked = gainAsked(data.timeH.length) * scale.variance * Math.sqrt(scale.inflation)
+  const scale = longRunScale(ladder[ladder.length - 1]!, data)
+  const asked = gainAsked(data.timeH.length) * Math.max(0.6, scale.variance)
   let fit = ladder[ladder.length - 1]!
   while (fit.breaksH.length > 0) {
     let cheapest: PiecewiseFit | null = null
@@ -196,5 +181,5 @@ export function segmentFall(
     if (slid.chiSquared - fit.chiSquared > asked) break
     fit = slid
   }
-  return { fit, ...residualScale(fit) }
+  return { fit, scale: longRunScale(fit, data) }
 }
