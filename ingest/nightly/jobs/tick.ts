@@ -1,0 +1,69 @@
+import { queueJob } from '@/db/changes/jobs'
+import { clearLateHours } from '@/db/changes/nights'
+import type { Database, Tx } from '@/db/client'
+import { listBuildings } from '@/db/queries/building-plan'
+import { hasDigestsToWrite } from '@/db/queries/digests'
+import { finishedRuns, firstReadingAt, lateHours } from '@/db/queries/nights'
+import { METHOD_VERSION } from '@/lib/air/decay/version'
+import type { Clock } from '@/lib/server/clock'
+import { addDays, localDate } from '@/lib/time'
+import { dueNights, lastWholeWeek, nightsToRepeat } from '../due'
+import type { ScheduledJob } from '../job'
+
+/** From this many nights on they are read together. */
+const NIGHTS_FOR_HISTORY = 3
+
+type Building = Awaited<ReturnType<typeof listBuildings>>[number]
+
+async function queueNights(tx: Tx, building: Building, dates: readonly string[], onlyIfAbsent: boolean) {
+  const first = dates[0]
+  const last = dates.at(-1)
+  if (first === undefined || last === undefined) return
+  const buildingId = building.id
+  if (dates.length >= NIGHTS_FOR_HISTORY) {
+    const payload = { buildingId, fromDate: first, toDate: last }
+    await queueJob(tx, { task: 'analyse-history', payload, onlyIfAbsent })
+    return
+  }
+  for (const date of dates)
+    await queueJob(tx, { task: 'analyse-night', payload: { buildingId, date }, onlyIfAbsent })
+}
+
+async function queueDigests(tx: Tx, building: Building, nowS: number, finalDates: ReadonlySet<string>) {
+  const weekStart = lastWholeWeek(nowS, building.timeZone)
+  if (!finalDates.has(addDays(weekStart, 6))) return
+  if (!(await hasDigestsToWrite(tx, { buildingId: building.id, weekStart }))) return
+  const payload = { buildingId: building.id, weekStart }
+  await queueJob(tx, { task: 'write-digests', payload, onlyIfAbsent: true })
+}
+
+async function tickBuilding(tx: Tx, building: Building, now: Date): Promise<void> {
+  const { id: buildingId, timeZone } = building
+  const nowS = now.getTime() / 1000
+  const firstAt = await firstReadingAt(tx, { buildingId })
+  const firstDate = firstAt && localDate(firstAt.getTime() / 1000, timeZone)
+  const runs = await finishedRuns(tx, {
+    buildingId,
+    methodVersion: METHOD_VERSION,
+    fromDate: '0001-01-01',
+    toDate: localDate(nowS, timeZone),
+  })
+  await queueNights(tx, building, dueNights({ timeZone, nowS, firstDate, runs }), true)
+  const marks = await lateHours(tx, { buildingId, until: now })
+  const lateHoursS = marks.map((mark) => mark.hour.getTime() / 1000)
+  // not "only if absent": a run that has read already must be followed by one that reads what came late
+  await queueNights(tx, building, nightsToRepeat({ timeZone, lateHoursS, runs }), false)
+  if (marks.length > 0) await clearLateHours(tx, { buildingId, until: now })
+  const final = new Set(runs.filter((run) => !run.provisional).map((run) => run.localDate))
+  await queueDigests(tx, building, nowS, final)
+  await queueJob(tx, { task: 'watch-sensors', payload: { buildingId }, onlyIfAbsent: true })
+}
+
+/** Compares each building's local time with what has run, and queues what is due. Marks of late readings go in the transaction that queues their nights. */
+export async function tick({ database, clock }: { database: Database; clock: Clock }): Promise<void> {
+  const now = clock.now()
+  const buildings = await database.asSystem('tick', (tx) => listBuildings(tx))
+  for (const building of buildings) await database.asSystem('tick', (tx) => tickBuilding(tx, building, now))
+}
+
+export const tickJob: ScheduledJob = { task: 'tick', run: tick }
