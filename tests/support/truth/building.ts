@@ -9,6 +9,7 @@ import { damage, observe, type Reading, SOUND_SENSOR } from './sensor'
 
 export type TruthRoom = {
   id: string
+  className: string
   draft: Draft
   /** the room's entry in rooms.json */
   entry: Record<string, unknown>
@@ -28,7 +29,9 @@ export type TruthBuilding = {
 }
 
 export type Order = {
+  /** a class, or a name for the building when `mix` names the classes that its rooms take in turn */
   className: string
+  mix?: readonly string[]
   seed: number
   part: number
   rooms: number
@@ -39,8 +42,13 @@ export type Order = {
 /** Every class that can be ordered: those of the table, and the office of hand-made evenings. */
 const KINDS: Record<string, ClassOfRooms> = { ...CLASSES, office: OFFICE }
 
-function firstDate(order: Order, random: Random): string {
-  const kind = KINDS[order.className]!
+function kindNamed(name: string): ClassOfRooms {
+  const kind = KINDS[name]
+  if (!kind) throw new Error(`no class "${name}"; there are ${Object.keys(KINDS).join(', ')}`)
+  return kind
+}
+
+function firstDate(order: Order, kind: ClassOfRooms, random: Random): string {
   if (kind.startDates) return kind.startDates[order.part % kind.startDates.length]!
   // any week of the year that is far from a clock change
   const monday = addDays('2026-01-05', 7 * random.pick([0, 1, 4, 6, 8, 15, 18, 20, 24, 30, 35, 38, 45, 47]))
@@ -62,7 +70,8 @@ function zonePlans(draft: Draft): ZonePlan[] {
 function makeRoom(order: Order, id: string, index: number, frame: Frame) {
   const random = randomFrom(`${order.seed}/${order.className}/${order.part}/${id}`)
   const setting = { random, zone: frame.zone, dates: frame.dates, fromS: frame.fromS, index }
-  const draft = KINDS[order.className]!.draft(setting)
+  const className = order.mix ? order.mix[index % order.mix.length]! : order.className
+  const draft = kindNamed(className).draft(setting)
   const records = integrate(zonePlans(draft), frame.fromS, frame.outdoor, random.fork('air'))
   const truth = keepMinutes(records[0]!, frame.outdoor)
   const steps = draft.outdoorRate.map((k) => k.fromS)
@@ -70,7 +79,7 @@ function makeRoom(order: Order, id: string, index: number, frame: Frame) {
   const readings = damage(seen, draft.flaws, random.fork('damage'))
   const volume = draft.volumeM3 * random.uniform(0.97, 1.03)
   const entry: Record<string, unknown> = { id, volume_m3: Number(volume.toFixed(1)), ...draft.declared }
-  const room: TruthRoom = { id, draft, entry, truth, spells: emptySpells(truth, steps), readings }
+  const room: TruthRoom = { id, className, draft, entry, truth, spells: emptySpells(truth, steps), readings }
   if (!draft.neighbour?.measured) return { room, neighbour: null }
   const nextDoor = `${id}-hall`
   entry.neighbour = nextDoor
@@ -82,15 +91,14 @@ function makeRoom(order: Order, id: string, index: number, frame: Frame) {
 
 type Frame = { zone: string; dates: string[]; fromS: number; outdoor: Float64Array }
 
-/** Draws one building of rooms of a class: everything depends on the order alone. */
+/** Draws one building of rooms of a class, or of several in turn: everything depends on the order alone. */
 export function makeBuilding(order: Order): TruthBuilding {
-  const kind = KINDS[order.className]
-  if (!kind) throw new Error(`no class "${order.className}"; there are ${Object.keys(KINDS).join(', ')}`)
+  const kind = kindNamed(order.mix?.[0] ?? order.className)
   const random = randomFrom(`${order.seed}/${order.className}/${order.part}/building`)
   const zone = random.pick(
     kind.zones ?? ['Europe/Lisbon', 'Europe/Berlin', 'Europe/London', 'Europe/Helsinki'],
   )
-  const first = firstDate(order, random)
+  const first = firstDate(order, kind, random)
   const dates = Array.from({ length: order.days + 1 }, (_, d) => addDays(first, d))
   const fromS = localTimeS(zone, first, 0)
   // the last date is the morning after the last evening

@@ -158,3 +158,11 @@ export function judge(building: TruthBuilding, answers: readonly Answer[]): Judg
   })
   return { verdicts, evenings: [...evenings.values()].flat() }
 }
+
+/** The part of a judgement that is about rooms of one class. */
+export function ofClass(judgement: Judgement, className: string): Judgement {
+  return {
+    verdicts: judgement.verdicts.filter((v) => v.room.className === className),
+    evenings: judgement.evenings.filter((e) => e.room.className === className),
+  }
+}

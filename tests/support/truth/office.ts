@@ -109,7 +109,7 @@ function comesBack(setting: Setting): Draft {
   return draft
 }
 
-/** Windows opened for a quarter of an hour at 17:00 while a shift works on until late at night, thinning slowly. */
+/** Windows opened for a quarter of an hour at 17:00 while a shift works on until the morning. */
 function windowWithPeople(setting: Setting): Draft {
   const draft = officeRoom(setting, { rate: [0.5, 0.9], excess: [900, 1500] })
   const steps = [
@@ -118,7 +118,7 @@ function windowWithPeople(setting: Setting): Draft {
   ] as const
   const stays = setting.dates.flatMap((date) =>
     Array.from({ length: draft.persons }, (_, k) =>
-      group(localTimeS(setting.zone, date, 9 + 0.02 * k), localTimeS(setting.zone, date, 28.5 + 0.02 * k), 1),
+      group(localTimeS(setting.zone, date, 9 + 0.02 * k), localTimeS(setting.zone, date, 31 + 0.02 * k), 1),
     ),
   )
   return { ...draft, stays, outdoorRate: stepped(setting, draft.ratePerHour, steps) }
