@@ -1,11 +1,11 @@
 import { describe, expect, it } from 'vitest'
-import { addNights } from '@/lib/air/nights'
 import { judgeRoom, type VerdictInput } from '@/lib/air/verdict'
 import type { RoomEstimate } from '@/lib/air/weeks'
+import { addDays } from '@/lib/time'
 import { atLeast, atMost, estimate } from './support/estimates'
 
 const through = '2026-03-29'
-const night = (daysBack: number) => addNights(through, -daysBack)
+const night = (daysBack: number) => addDays(through, -daysBack)
 const weekdays = (count: number, ratePerHour: number, over: Partial<RoomEstimate> = {}) =>
   Array.from({ length: count }, (_, i) =>
     estimate(night(i), ratePerHour * (1 + 0.02 * Math.sin(i * 2)), over),
