@@ -39,17 +39,29 @@ export function writeTruth(file: string, truth: object): void {
   writeWhole(file, `${JSON.stringify(truth)}\n`)
 }
 
-/** The saved state of the simulation, if it is of this birth; a hint that saves time, never needed. */
-export function readState(dataDir: string, birth: DemoBirth): SimulationState | undefined {
-  const saved = readJson<{ birth: DemoBirth; plan: number; state: SimulationState }>(
-    path.join(dataDir, 'demo-state.json'),
-  )
+/** States kept: one an hour, so that the newest before a gap's start is never far. */
+const STATES_KEPT = 6
+
+type SavedStates = { birth: DemoBirth; plan: number; states: SimulationState[] }
+
+function savedStates(dataDir: string, birth: DemoBirth): SimulationState[] {
+  const saved = readJson<SavedStates>(path.join(dataDir, 'demo-state.json'))
   const same = saved?.birth.seed === birth.seed && saved.birth.firstStart === birth.firstStart
-  return same && saved.plan === PLAN_VERSION ? saved.state : undefined
+  return same && saved.plan === PLAN_VERSION ? saved.states : []
 }
 
-export function writeState(dataDir: string, birth: DemoBirth, state: SimulationState): void {
-  writeWhole(path.join(dataDir, 'demo-state.json'), JSON.stringify({ birth, plan: PLAN_VERSION, state }))
+/** The newest saved state of this birth at or before an epoch minute; it saves time and is never needed. */
+export function readState(dataDir: string, birth: DemoBirth, minute: number): SimulationState | undefined {
+  return savedStates(dataDir, birth)
+    .filter((state) => state.minute <= minute)
+    .at(-1)
+}
+
+/** Keeps a state beside the newest earlier ones. */
+export function keepState(dataDir: string, birth: DemoBirth, state: SimulationState): void {
+  const earlier = savedStates(dataDir, birth).filter((s) => s.minute < state.minute)
+  const kept: SavedStates = { birth, plan: PLAN_VERSION, states: [...earlier, state].slice(-STATES_KEPT) }
+  writeWhole(path.join(dataDir, 'demo-state.json'), JSON.stringify(kept))
 }
 
 /** Raised whenever the mill's plan or physics change, so that no state of an older one is gone on from. */

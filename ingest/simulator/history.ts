@@ -12,6 +12,8 @@ export type HistoryBatch = {
   co2Ppm: Float32Array
   temperatureC: Float32Array
   relativeHumidityPct: Float32Array
+  /** the mill at the batch's end, to go on from */
+  state: SimulationState
 }
 
 export type HistoryOptions = {
@@ -24,11 +26,8 @@ export type HistoryOptions = {
   batchMinutes?: number
 }
 
-/**
- * The readings of a span of minutes in batches of a day or less, made as they are asked for; returns the simulation, standing
- * at the span's end.
- */
-export function* makeHistory(world: World, options: HistoryOptions): Generator<HistoryBatch, Simulation> {
+/** The readings of a span of minutes in batches of a day unless told otherwise, made as they are asked for. */
+export function* makeHistory(world: World, options: HistoryOptions): Generator<HistoryBatch, void> {
   const from = Math.floor((options.fromS ?? world.historyStartS) / 60)
   const to = Math.floor(options.toS / 60)
   const usable = options.state && options.state.minute <= from ? options.state : undefined
@@ -39,12 +38,11 @@ export function* makeHistory(world: World, options: HistoryOptions): Generator<H
     yield makeBatch(simulation, at, minutes)
     at += minutes
   }
-  return simulation
 }
 
 function makeBatch(simulation: Simulation, startMinute: number, minutes: number): HistoryBatch {
   const sensors = simulation.world.scenario.sensors.length
-  const batch: HistoryBatch = {
+  const batch = {
     startMinute,
     minutes,
     sensors,
@@ -60,21 +58,35 @@ function makeBatch(simulation: Simulation, startMinute: number, minutes: number)
     batch.temperatureC.set(reading.temperatureC, m * sensors)
     batch.relativeHumidityPct.set(reading.relativeHumidityPct, m * sensors)
   }
-  return batch
+  return { ...batch, state: simulation.snapshot() }
 }
 
-/** Calls `each` for every reading of a batch: sensor's place in the plan, its instant (epoch seconds) and its values. */
-export function forEachReading(
-  batch: HistoryBatch,
-  each: (sensor: number, timeS: number, co2Ppm: number, temperatureC: number, humidityPct: number) => void,
-): void {
-  for (let row = 0, m = 0; m < batch.minutes; m++) {
-    const minuteS = (batch.startMinute + m) * 60
-    for (let s = 0; s < batch.sensors; s++, row++) {
-      const co2 = batch.co2Ppm[row]!
-      if (Number.isNaN(co2)) continue
-      const temperatureC = Math.round(10 * batch.temperatureC[row]!) / 10
-      each(s, minuteS + batch.phaseS[s]!, co2, temperatureC, batch.relativeHumidityPct[row]!)
-    }
-  }
+type EachReading = (
+  sensor: number,
+  timeS: number,
+  co2Ppm: number,
+  temperatureC: number,
+  humidityPct: number,
+) => void
+
+/** Calls `each` for every reading of a batch in order of time: place in the plan, instant (epoch seconds), ppm, °C, %. */
+export function forEachReading(batch: HistoryBatch, each: EachReading): void {
+  for (let m = 0; m < batch.minutes; m++)
+    for (let s = 0; s < batch.sensors; s++) visit(batch, m * batch.sensors + s, each)
+}
+
+/** As forEachReading, sensor by sensor: the order in which the database keeps them together. */
+export function forEachReadingBySensor(batch: HistoryBatch, each: EachReading): void {
+  for (let s = 0; s < batch.sensors; s++)
+    for (let m = 0; m < batch.minutes; m++) visit(batch, m * batch.sensors + s, each)
+}
+
+function visit(batch: HistoryBatch, row: number, each: EachReading): void {
+  const co2Ppm = batch.co2Ppm[row]!
+  if (Number.isNaN(co2Ppm)) return
+  const sensor = row % batch.sensors
+  const timeS = (batch.startMinute + (row - sensor) / batch.sensors) * 60 + batch.phaseS[sensor]!
+  // 32-bit floats hold tenths inexactly: back to the tenth that the sensor said
+  const temperatureC = Math.round(10 * batch.temperatureC[row]!) / 10
+  each(sensor, timeS, co2Ppm, temperatureC, batch.relativeHumidityPct[row]!)
 }
