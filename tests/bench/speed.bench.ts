@@ -1,12 +1,14 @@
 import { cpus } from 'node:os'
 import { quantile } from '../support/truth/summary'
 import { options, percent, printTable, wholeNumber, writeReport } from './report'
+import { analyseFilesAtLength, type FileRun } from './speed/file-run'
 import { compareFits } from './speed/fits'
 import { bulk, cpuMsOf, oneMinuteRoomDays } from './speed/room-days'
 
-const chosen = options({ seed: '1', 'room-days': '10000' })
+const chosen = options({ seed: '1', 'room-days': '10000', files: '700' })
 const seed = wholeNumber('seed', chosen.seed, 0)
 const many = wholeNumber('room-days', chosen['room-days'], 100)
+const inFiles = wholeNumber('files', chosen.files, 0)
 const few = Math.round(many / 10)
 
 console.log(`${cpus()[0]?.model ?? 'unknown processor'}, Node ${process.version}`)
@@ -38,6 +40,23 @@ printTable(
 )
 console.log(`time grew ${growth.toFixed(2)} times as much as the number of room-days (1 is linear)`)
 
+const fileRuns: FileRun[] = []
+for (const roomDays of inFiles > 0 ? [Math.round(inFiles / 4), inFiles] : [])
+  fileRuns.push(await analyseFilesAtLength(roomDays))
+if (fileRuns.length > 0) {
+  console.log('\nthe analyse command on files of one-minute readings (--files sets how many room-days)')
+  printTable(
+    ['room-days', 'file MB', 'seconds', 'decays', 'peak memory MB'],
+    fileRuns.map((f) => [
+      String(f.roomDays),
+      f.fileMb.toFixed(0),
+      f.seconds.toFixed(1),
+      String(f.decays),
+      f.peakMb.toFixed(0),
+    ]),
+  )
+}
+
 const fits = compareFits(seed)
 const own = fits[0]!
 console.log('\nfits of C = B + E exp(−A t), 120 readings, three unknowns, the same start')
@@ -52,4 +71,12 @@ printTable(
   ]),
 )
 if (fits.length < 3) console.log('SciPy is not installed (Debian: python3-scipy): left out')
-writeReport('speed', { node: process.version, perRoomDayMs: perRoomDay, small, large, growth, fits })
+writeReport('speed', {
+  node: process.version,
+  perRoomDayMs: perRoomDay,
+  small,
+  large,
+  growth,
+  fileRuns,
+  fits,
+})
