@@ -1,6 +1,6 @@
 /** Runs the analysis over every local day of a spilled record: first each night's floor, then each day's decays. */
 import { analyseBuildingDay, nightFloor, type RoomHistory } from '@/lib/air/analyse-building'
-import type { QuietFloor } from '@/lib/air/decay/background'
+import type { QuietFloor } from '@/lib/air/decay/floor'
 import type { SupplyStop } from '@/lib/air/decay/modes'
 import type { Series } from '@/lib/air/types'
 import { addDays, localDate, localDayBounds } from '@/lib/time'

@@ -2,9 +2,10 @@
  * One building, one local day: every decay that starts on it, in every room, with what rooms know of each other. The nightly job, the command
  * `analyse` and the tests all call this; it reads no clock, no file and no database.
  */
-import { estimateBackground, outdoorLevel, type QuietFloor, quietFloor } from './decay/background'
+import { estimateBackground, outdoorLevel } from './decay/background'
 import { cleanRecord } from './decay/clean'
-import { findFalls, levelTrack } from './decay/falls'
+import { type Fall, findFalls, levelTrack, type Track } from './decay/falls'
+import { lowestLevel, type QuietFloor, restingLevels } from './decay/floor'
 import { modeOf, type RateDrop, type SupplyStop, sharedStops } from './decay/modes'
 import { decayOf, refusedDecay } from './decay/outcome'
 import { type FallReading, readFall } from './decay/read-fall'
@@ -60,43 +61,49 @@ type Prepared = {
   falls: { reading: FallReading | null; background: Background; fall: ReturnType<typeof findFalls>[number] }[]
 }
 
+type Window = { date: string; dayStartS: number; dayEndS: number }
+
+/** What the night from local noon to noon left: the resting level nearest to the evening, else the lowest level seen. */
+function nightsFloor(track: Track, falls: readonly Fall[], day: Window): QuietFloor | null {
+  const fromS = day.dayStartS + 43_200
+  const toS = day.dayEndS + 43_200
+  const lowest = lowestLevel(track, fromS, toS, day.date)
+  const resting = restingLevels(track, falls, lowest, day.date).filter(
+    (floor) => floor.atS >= fromS && floor.atS <= toS,
+  )
+  return resting[0] ?? lowest
+}
+
+/** The floor that one night leaves in history. */
+export function nightFloor(input: Pick<BuildingRoom, 'room' | 'series'>, day: Window): QuietFloor | null {
+  const record = cleanRecord(input.series, input.room.sensor)
+  const track = levelTrack(record, day.dayStartS + 43_200, day.dayEndS + 43_200)
+  return nightsFloor(track, findFalls(track), day)
+}
+
 function prepare(
   day: BuildingDay,
   input: BuildingRoom,
   outdoor: ReturnType<typeof outdoorLevel> | undefined,
 ): Prepared {
   const record = cleanRecord(input.series, input.room.sensor)
-  const track = levelTrack(record, day.dayStartS - 7200, day.dayEndS + 12 * 3600)
-  const floor = quietFloor(track, day.dayStartS + 12 * 3600, day.dayEndS + 12 * 3600, day.date)
-  const before = quietFloor(track, day.dayStartS - 7200, day.dayStartS + 12 * 3600, `${day.date} before`)
-  const history = [
-    ...(input.history?.quietFloors ?? []).filter((entry) => entry.date !== day.date),
-    ...(before ? [before] : []),
-  ]
-  const falls = findFalls(track)
+  const fromS = day.dayStartS - 7200
+  const toS = day.dayEndS + 43_200
+  const track = levelTrack(record, fromS, toS)
+  const all = findFalls(track)
+  const lowest = lowestLevel(track, fromS, toS, day.date)
+  const own = restingLevels(track, all, lowest, day.date)
+  if (lowest?.reached && own.length === 0) own.push(lowest)
+  const history = (input.history?.quietFloors ?? []).filter((entry) => entry.date !== day.date)
+  const falls = all
     .filter((fall) => fall.toS > day.dayStartS && fall.fromS < day.dayEndS)
     .map((fall) => {
       const atS = fall.fromS + Math.min(5400, (fall.toS - fall.fromS) / 2)
-      const background = estimateBackground({
-        own: floor,
-        history,
-        outdoor,
-        atS,
-        defaultOutdoor: day.defaultOutdoor,
-      })
+      const { defaultOutdoor } = day
+      const background = estimateBackground({ own, lowest, history, outdoor, atS, defaultOutdoor })
       return { fall, background, reading: readFall(record, fall, background) }
     })
-  return { input, record, floor, falls }
-}
-
-/** The floor that one night leaves in history: the lowest level kept for a while between local noon and the next noon. */
-export function nightFloor(
-  input: Pick<BuildingRoom, 'room' | 'series'>,
-  day: { date: string; dayStartS: number; dayEndS: number },
-): QuietFloor | null {
-  const record = cleanRecord(input.series, input.room.sensor)
-  const track = levelTrack(record, day.dayStartS + 43_200, day.dayEndS + 43_200)
-  return quietFloor(track, day.dayStartS + 43_200, day.dayEndS + 43_200, day.date)
+  return { input, record, floor: nightsFloor(track, all, day), falls }
 }
 
 /** Rate drops of every room of one air handler, to be compared. */

@@ -4,7 +4,7 @@
  */
 
 /** Outdoor CO2 with its date: remote-site yearly means 421 (2023) and 425 (2024) growing about 3 ppm a year, plus a town's share. */
-export const DEFAULT_OUTDOOR = { ppm: 436, standardUncertaintyPpm: 25, date: '2026-01' } as const
+export const DEFAULT_OUTDOOR = { ppm: 432, standardUncertaintyPpm: 15, date: '2026-01' } as const
 
 /** Readings outside this range are no room air (ppm; practice). */
 export const PLAUSIBLE_PPM = { low: 300, high: 20_000 } as const
@@ -23,6 +23,8 @@ export const DETECTION = {
   prominenceSigmas: 5,
   /** a fall shorter than this is not reported, not even as refused, ppm */
   leastDropPpm: 70,
+  /** nothing is read across a silence longer than this, seconds */
+  silenceS: 2700,
   /** most bins in one fit */
   fitBins: 120,
 } as const
@@ -49,8 +51,18 @@ export const GATES = {
   doubtfulHalfWidth: 0.6,
 } as const
 
-/** How far outdoor air wanders in the hours between the night's floor and the evening, ppm (chosen; daily course of town air). */
-export const BACKGROUND_WANDER_PPM = 6
+/**
+ * What is not known of the background (chosen): the daily course of town air and a sensor's slow baseline between the hour of a resting level
+ * and the hour wanted (less where an outdoor record is followed), the same between nights, and the offset between two sensors of ordinary make.
+ */
+export const BACKGROUND = {
+  wanderPpm: 11,
+  wanderFollowedPpm: 8,
+  wanderS: 6 * 3600,
+  otherNightPpm: 12,
+  sensorOffsetPpm: 18,
+  leastPpm: 5,
+} as const
 
 /** CO2 of one quiet grown person, L/s at room conditions: the smallest source that a test for people must see (Persily and de Jonge 2017, 1.0 met). */
 export const QUIET_PERSON_LPS = 0.0042

@@ -59,9 +59,9 @@ export type RoomLive = {
   unusual: boolean
 }
 
-/** Seconds without a reading after which a sensor that reports every `intervalS` has no signal: three intervals, at least 5 min more than one. */
+/** Seconds without a reading after which a sensor that reports every `intervalS` has no signal: five of its intervals, at least three minutes. */
 export function silentAfterS(intervalS: number): number {
-  return Math.max(3 * intervalS, intervalS + 300)
+  return Math.max(5 * intervalS, 180)
 }
 
 /** The limit as a level in ppm: an absolute one stands, one above outdoor air is added to it. */

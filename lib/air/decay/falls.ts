@@ -6,7 +6,8 @@ import type { CleanRecord } from './clean'
 
 /** A coarse track of the level, for looking only: an on-change sensor's silence is shown as a held value here, and is never fitted. */
 export type Track = { timeS: Float64Array; ppm: Float64Array; sigmaPpm: number }
-export type Fall = { fromS: number; toS: number; peakPpm: number; troughPpm: number }
+/** `toS` is where it stops falling; `restS` how long the level then stays low. */
+export type Fall = { fromS: number; toS: number; restS: number; peakPpm: number; troughPpm: number }
 
 function heldTrack(record: CleanRecord): { timeS: number[]; ppm: number[] } {
   const timeS: number[] = []
@@ -58,15 +59,25 @@ export function findFalls(track: Track): Fall[] {
     let start = from
     for (let i = from; i < to && ppm[i]! > ppm[from]! - prominence / 2; i++) start = i
     let end = to
-    for (let i = to; i < timeS.length && ppm[i]! < ppm[to]! + prominence / 2; i++) end = i
-    const fromS = Math.max(timeS[from]!, timeS[start]! - 900)
-    if (ppm[from]! - ppm[to]! >= DETECTION.leastDropPpm) {
-      falls.push({ fromS, toS: timeS[end]!, peakPpm: ppm[from]!, troughPpm: ppm[to]! })
+    for (let i = to; i < timeS.length && ppm[i]! < ppm[to]! + prominence / 2; i++) {
+      if (i > to && timeS[i]! - timeS[i - 1]! > DETECTION.silenceS) break
+      end = i
     }
+    const fromS = Math.max(timeS[from]!, timeS[start]! - 900)
+    if (ppm[from]! - ppm[to]! < DETECTION.leastDropPpm) return
+    // a level that stays low for hours has a trough anywhere in it
+    const restS = timeS[end]!
+    const toS = restS - timeS[to]! > 2 * 3600 ? restS : timeS[to]!
+    falls.push({ fromS, toS, restS, peakPpm: ppm[from]!, troughPpm: ppm[to]! })
   }
   for (let i = 1; i < track.ppm.length; i++) {
     const value = track.ppm[i]!
-    if (falling) {
+    // a long silence hides what happened: nothing is read across it
+    if (track.timeS[i]! - track.timeS[i - 1]! > DETECTION.silenceS) {
+      if (falling) close(peak, trough)
+      falling = false
+      peak = i
+    } else if (falling) {
       if (value < track.ppm[trough]!) trough = i
       else if (value > track.ppm[trough]! + prominence) {
         close(peak, trough)

@@ -131,7 +131,8 @@ export function judgeReading(
       )
   } else doubts.push(kind === 'at-least' ? 'too-fast' : 'too-slow')
   if (!gapCheck) (gap > 0.6 ? refusals : doubts).push('gap')
-  if (!floor && background.origin !== 'default') doubts.push('sensor-suspect')
+  // a false zero cancels where the room's own resting level is the background, and does not where it is not
+  if (!floor && background.origin !== 'own record') doubts.push('sensor-suspect')
   if (record.stuck.some((cut) => overlaps(cut, reading.fromS, reading.toS))) doubts.push('sensor-suspect')
   if (record.clockClashes.some((t) => t >= reading.fromS - 3600 && t <= reading.toS)) doubts.push('clock')
   if (record.saturated.some((cut) => overlaps(cut, reading.fromS + 1, reading.toS))) doubts.push('saturated')
