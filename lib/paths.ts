@@ -20,6 +20,7 @@ export const paths = {
     health: () => '/api/health',
     live: () => '/api/v1/live',
     airChange: () => '/api/v1/air-change',
+    firstReading: (sensor: string) => `/api/v1/sensors/${part(sensor)}/first-reading`,
   },
 } as const
 

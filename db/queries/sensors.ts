@@ -1,5 +1,5 @@
 import { and, asc, desc, eq, gte, isNull, sql } from 'drizzle-orm'
-import type { FirstReading, Position, SensorRow, Standing } from '@/lib/wire/sensors'
+import type { FirstReading, Position, Refusal, SensorRow, Standing } from '@/lib/wire/sensors'
 import { deviceIdKey } from '@/lib/wire/topics'
 import type { Tx } from '../client'
 import { buildings, floors, placements, refusedMessages, rooms, sensors } from '../schema'
@@ -179,4 +179,26 @@ export async function listPlaces(tx: Tx, { buildingId }: { buildingId: number })
 export async function getSite(tx: Tx, { buildingId }: { buildingId: number }): Promise<string | undefined> {
   const [row] = await tx.select({ slug: buildings.slug }).from(buildings).where(eq(buildings.id, buildingId))
   return row?.slug
+}
+
+/** What was refused of a sensor's messages and connects in the last 14 days, newest hour first. */
+export async function listRefusals(tx: Tx, { deviceId }: { deviceId: string }): Promise<Refusal[]> {
+  return tx
+    .select({
+      reason: refusedMessages.reason,
+      detail: refusedMessages.detail,
+      hourS: sql<number>`extract(epoch from ${refusedMessages.hour})::double precision`,
+      count: refusedMessages.count,
+      sample: refusedMessages.sample,
+    })
+    .from(refusedMessages)
+    .innerJoin(sensors, eq(sensors.id, refusedMessages.sensorId))
+    .where(
+      and(
+        eq(sensors.deviceIdKey, deviceIdKey(deviceId)),
+        sql`${refusedMessages.hour} > now() - interval '14 days'`,
+      ),
+    )
+    .orderBy(desc(refusedMessages.hour))
+    .limit(50)
 }

@@ -83,3 +83,9 @@ export function offersDemoSignIn(): boolean {
   const { EBBMARK_DEMO, HOST } = env()
   return EBBMARK_DEMO && ['127.0.0.1', '::1', 'localhost'].includes(HOST)
 }
+
+/** Where sensors publish to, as an installer types it in. */
+export function brokerAddress(): { host: string; port: number } {
+  const { MQTT_HOST, MQTT_PORT } = env()
+  return { host: MQTT_HOST === '0.0.0.0' ? new URL(publicUrl()).hostname : MQTT_HOST, port: MQTT_PORT }
+}

@@ -61,3 +61,13 @@ export const firstReadingSchema = z.object({
     .nullable(),
 })
 export type FirstReading = z.infer<typeof firstReadingSchema>
+
+/** Refused messages of one hour and reason. */
+export const refusalSchema = z.object({
+  reason: z.string(),
+  detail: z.string(),
+  hourS: z.number(),
+  count: z.number(),
+  sample: z.string().nullable(),
+})
+export type Refusal = z.infer<typeof refusalSchema>
