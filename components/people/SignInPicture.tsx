@@ -1,3 +1,5 @@
+import { Mark } from '@/components/layout/Mark'
+
 /** Times in hours of an imagined day, level as a share of the drawing's full height above outdoor. */
 type Stretch = { from: number; to: number; towards: number; present: boolean }
 
@@ -91,7 +93,7 @@ function DayLabels({ x, y, limitY }: Scales) {
       {words(FIRST_HOUR, limitY - 9, 'the limit')}
       {words(9.35, y(0.36), 'people come in', 'end')}
       {words(15.62, y(0.8), 'everyone leaves, and the level ebbs')}
-      {words(16.35, y(0.33), 'as fast as outdoor air arrives')}
+      {words(18.45, y(0.3), 'as fast as outdoor air arrives', 'end')}
     </g>
   )
 }
@@ -120,21 +122,5 @@ export function SignInPicture() {
         <DayDrawing size={{ width: 390, height: 110, left: 20 }} id="day-narrow" labels={false} />
       </div>
     </div>
-  )
-}
-
-/** The glass of the name: an open vessel with ebb marks above its level. */
-function Mark() {
-  return (
-    <svg width="16" height="22" viewBox="0 0 16 22" aria-hidden="true" focusable="false">
-      <path
-        d="M1 0V18a3 3 0 0 0 3 3h8a3 3 0 0 0 3-3V0"
-        fill="none"
-        style={{ stroke: 'var(--ink)' }}
-        strokeWidth="1.5"
-      />
-      <path d="M3 14h10v3.5a2 2 0 0 1-2 2H5a2 2 0 0 1-2-2Z" style={{ fill: 'var(--tide)' }} />
-      <path d="M3 5h9M3 9h6M3 11.6h4.5" style={{ stroke: 'var(--tide)' }} strokeWidth="1.4" />
-    </svg>
   )
 }

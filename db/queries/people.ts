@@ -1,11 +1,11 @@
-import { and, asc, eq, exists } from 'drizzle-orm'
+import { and, arrayOverlaps, asc, eq, exists } from 'drizzle-orm'
 import { ROLES, type Role } from '@/lib/policy/roles'
 import type { Tx } from '../client'
 import { buildings, memberships, tenancies, users } from '../schema'
 
 export type Credential = { userId: number; version: number; passwordHash: string | null }
 
-/** What is needed to check a password: of someone who has a place in an organisation. `email` in lower case. */
+/** What is needed to check a password: of someone who has a role in an organisation. `email` in lower case. */
 export async function getCredential(tx: Tx, { email }: { email: string }): Promise<Credential | undefined> {
   const [row] = await tx
     .select({ userId: users.id, version: users.version, passwordHash: users.passwordHash })
@@ -13,7 +13,12 @@ export async function getCredential(tx: Tx, { email }: { email: string }): Promi
     .where(
       and(
         eq(users.email, email),
-        exists(tx.select().from(memberships).where(eq(memberships.userId, users.id))),
+        exists(
+          tx
+            .select()
+            .from(memberships)
+            .where(and(eq(memberships.userId, users.id), arrayOverlaps(memberships.roles, [...ROLES]))),
+        ),
       ),
     )
   return row
@@ -55,13 +60,26 @@ export async function getTenancyName(
   return row?.name
 }
 
-/** The people of the demo, in the order in which they were added. */
-export async function listDemoPeople(tx: Tx): Promise<{ email: string; name: string; roles: Role[] }[]> {
+export type DemoPersonRow = { email: string; name: string; roles: Role[]; oneBuilding: boolean }
+
+/** The people of the demo, in the order in which they were added; `oneBuilding` where the place is restricted to buildings alone. */
+export async function listDemoPeople(tx: Tx): Promise<DemoPersonRow[]> {
   const rows = await tx
-    .select({ email: users.email, name: users.name, roles: memberships.roles })
+    .select({
+      email: users.email,
+      name: users.name,
+      roles: memberships.roles,
+      buildingIds: memberships.buildingIds,
+      tenancyId: memberships.tenancyId,
+    })
     .from(users)
     .innerJoin(memberships, eq(memberships.userId, users.id))
     .where(eq(users.isDemo, true))
     .orderBy(asc(users.id))
-  return rows.map((row) => ({ ...row, roles: ROLES.filter((role) => row.roles.includes(role)) }))
+  return rows.map(({ email, name, roles, buildingIds, tenancyId }) => ({
+    email,
+    name,
+    roles: ROLES.filter((role) => roles.includes(role)),
+    oneBuilding: buildingIds !== null && tenancyId === null,
+  }))
 }

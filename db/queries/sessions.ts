@@ -1,4 +1,4 @@
-import { and, asc, count, desc, eq, gt, isNull, max, sql } from 'drizzle-orm'
+import { and, arrayOverlaps, asc, count, desc, eq, gt, isNull, max, sql } from 'drizzle-orm'
 import { type Membership, ROLES, type Role } from '@/lib/policy/roles'
 import type { Tx } from '../client'
 import { memberships, organizations, sessions, signInEvents, users } from '../schema'
@@ -25,8 +25,8 @@ function rolesIn(words: readonly string[]): Role[] {
 }
 
 /**
- * The session, its person and their place in an organisation, if the session still stands: not revoked, not expired, and of the
- * person's present version. Someone in several organisations is shown the one they joined first.
+ * The session, its person and their place in an organisation, if the session still stands: not revoked, not expired, of the
+ * person's present version, and with a role. Someone in several organisations is shown the one they joined first.
  */
 export async function getStandingSession(
   tx: Tx,
@@ -44,6 +44,7 @@ export async function getStandingSession(
         isNull(sessions.revokedAt),
         gt(sessions.expiresAt, now),
         eq(sessions.userVersion, users.version),
+        arrayOverlaps(memberships.roles, [...ROLES]),
       ),
     )
     .orderBy(asc(memberships.id))

@@ -71,3 +71,10 @@ export const ROLE_WORDS: Readonly<Record<Role, string>> = {
   installer: 'Installer',
   tenant: 'Tenant',
 }
+
+/** Several roles as one phrase: "Operator and energy engineer". */
+export function rolesInWords(roles: readonly Role[]): string {
+  const words = roles.map((role) => ROLE_WORDS[role])
+  const [first = '', ...rest] = words
+  return [first, ...rest.map((word) => word.toLowerCase())].join(' and ')
+}

@@ -91,5 +91,5 @@ export function nightIsDone({ timeZone, createdAt, newestDone }: NewestNight, no
 function nightPart(nights: NewestNight[], now: Date): Part {
   const late = nights.filter((night) => !nightIsDone(night, now)).length
   if (late > 0) return { well: false, says: `not analysed for ${late} of ${nights.length} buildings` }
-  return { well: true, says: `analysed for ${nights.length} of ${nights.length} buildings` }
+  return { well: true, says: `every night that was due is analysed (buildings: ${nights.length})` }
 }

@@ -5,7 +5,7 @@ import { SignInForm } from '@/components/people/SignInForm'
 import { SignInPicture } from '@/components/people/SignInPicture'
 import { listDemoPeople } from '@/db/queries/people'
 import { safeNext } from '@/lib/paths'
-import { firstPageOf, ROLE_WORDS } from '@/lib/policy/navigation'
+import { firstPageOf, rolesInWords } from '@/lib/policy/navigation'
 import { redirectedWords } from '@/lib/server/auth/options'
 import { database } from '@/lib/server/database'
 import { offersDemoSignIn } from '@/lib/server/env'
@@ -40,10 +40,10 @@ export default async function SignInPage({ searchParams }: Search) {
           <DemoPeople
             action={signInAsDemoPerson}
             next={after}
-            people={demo.map(({ email, name, roles }) => ({
+            people={demo.map(({ email, name, roles, oneBuilding }) => ({
               email,
               name,
-              words: roles.map((role) => ROLE_WORDS[role]).join(' and '),
+              words: `${rolesInWords(roles)}${oneBuilding ? ', one building' : ''}`,
             }))}
           />
         )}
