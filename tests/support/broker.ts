@@ -1,4 +1,4 @@
-import { type ChildProcess, spawn } from 'node:child_process'
+import { spawn } from 'node:child_process'
 import path from 'node:path'
 import mqtt, { type IClientOptions, type MqttClient } from 'mqtt'
 import type pg from 'pg'
@@ -14,7 +14,9 @@ export type BrokerProcess = {
   output: () => string
   /** sends a signal and waits for the end; resolves with exit code or signal */
   end: (signal: NodeJS.Signals) => Promise<number | NodeJS.Signals | null>
-  hasEnded: () => boolean
+  ended: Promise<number | NodeJS.Signals | null>
+  /** closes the channel to its parent, as when the parent dies */
+  disconnect: () => void
 }
 
 /** Starts the real broker process and waits until it says that it is ready. */
@@ -52,12 +54,9 @@ export async function startBroker(options: {
       child.kill(signal)
       return ended
     },
-    hasEnded: () => hasEnded(child),
+    ended,
+    disconnect: () => child.disconnect(),
   }
-}
-
-function hasEnded(child: ChildProcess): boolean {
-  return child.exitCode !== null || child.signalCode !== null
 }
 
 export type TestSensor = { id: number; deviceId: string; secret: string; site: string; topic: string }
