@@ -1,5 +1,6 @@
 import { and, eq, inArray, isNull, ne, sql } from 'drizzle-orm'
 import type { Decay } from '@/lib/air/types'
+import { canonicalJson } from '../canonical-json'
 import type { Tx } from '../client'
 import { newPublicId } from '../public-id'
 import { type Carried, currentDecays, finishedRuns } from '../queries/nights'
@@ -72,11 +73,7 @@ function rowOf(night: NightResult, { roomId, sensorId, lead, decay }: FoundDecay
 /** What tells one row from another, whichever run wrote it: everything but its ids, its run and its place in time of writing. */
 function contentOf(row: NewDecay): string {
   const own = new Set(['id', 'publicId', 'inputHash', 'provisional', 'supersededAt', 'createdAt'])
-  const sorted = (_: string, value: unknown) =>
-    value && typeof value === 'object' && !Array.isArray(value)
-      ? Object.fromEntries(Object.entries(value).sort(([a], [b]) => (a < b ? -1 : 1)))
-      : value
-  return JSON.stringify(Object.fromEntries(Object.entries(row).filter(([key]) => !own.has(key))), sorted)
+  return canonicalJson(Object.fromEntries(Object.entries(row).filter(([key]) => !own.has(key))))
 }
 
 const placeOf = (row: NewDecay) =>

@@ -1,4 +1,5 @@
 import { createHash } from 'node:crypto'
+import { canonicalJson } from '@/db/canonical-json'
 import type { BuildingPlan, PlanPlacement } from '@/db/queries/building-plan'
 import type { NightRun } from '@/db/queries/nights'
 import { sliceSeries } from '@/db/queries/series'
@@ -93,9 +94,9 @@ function hashOf(methodVersion: string, day: BuildingDay): string {
       hash.update(new Uint8Array(part.buffer, part.byteOffset, part.byteLength))
   }
   const { rooms, outdoor, ...rest } = day
-  hash.update(JSON.stringify({ methodVersion, ...rest }))
+  hash.update(canonicalJson({ methodVersion, ...rest }))
   for (const { series, ...room } of rooms) {
-    hash.update(JSON.stringify(room))
+    hash.update(canonicalJson(room))
     addSeries(series)
   }
   addSeries(outdoor)
