@@ -2,7 +2,7 @@
 import { biasCorrectedCorrelation, lagOneCorrelation } from '@/lib/math/autocorrelation'
 import { t95 } from '@/lib/math/student-t'
 import { longRunScale } from './noise'
-import { type Binned, fitPiecewise, type PiecewiseFit, type Prior } from './piecewise'
+import { type Binned, fitPiecewise, type PiecewiseFit, type Prior, startFrom } from './piecewise'
 
 export type RateEstimate = {
   ratePerHour: number
@@ -23,27 +23,24 @@ export function scaledBins(data: Binned, factor: number): Binned {
 export function reweighed(data: Binned, fit: PiecewiseFit, prior: Prior | null) {
   const scale = longRunScale(fit, data)
   const factor = Math.sqrt(scale.variance)
-  const start = {
-    logStartExcess: fit.logStartExcess,
-    ratesPerHour: fit.ratesPerHour,
-    backgroundPpm: fit.backgroundPpm,
-  }
-  const again = fitPiecewise(scaledBins(data, factor), fit.fromH, fit.breaksH, prior, start, 10)
+  const again = fitPiecewise(scaledBins(data, factor), fit.fromH, fit.breaksH, prior, startFrom(fit), 10)
   return { fit: again ?? fit, scale, factor: again ? factor : 1 }
 }
 
 /** Standard uncertainty of ln A for rate k: [with the background known, with it as uncertain as it is]. */
 export function logRateUncertainty(fit: PiecewiseFit, k: number): { regression: number; background: number } {
-  const size = fit.ratesPerHour.length + 2
-  const b = size - 1
+  const size = fit.ratesPerHour.length + 3
+  const at = (i: number, j: number) => fit.covariance[i * size + j]!
   const a = k + 1
+  const b = size - 2
+  const d = size - 1
   const rate = Math.abs(fit.ratesPerHour[k]!)
-  const own = fit.covariance[a * size + a]!
-  const cross = fit.covariance[a * size + b]!
-  const back = fit.covariance[b * size + b]!
-  const background = back > 0 ? (cross * cross) / back : 0
+  const determinant = at(b, b) * at(d, d) - at(b, d) ** 2
+  const explained =
+    (at(a, b) ** 2 * at(d, d) - 2 * at(a, b) * at(a, d) * at(b, d) + at(a, d) ** 2 * at(b, b)) / determinant
+  const background = determinant > 0 ? Math.max(0, explained) : 0
   return {
-    regression: Math.sqrt(Math.max(0, own - background)) / rate,
+    regression: Math.sqrt(Math.max(0, at(a, a) - background)) / rate,
     background: Math.sqrt(background) / rate,
   }
 }

@@ -135,6 +135,6 @@ export function decayOf(outcome: Outcome): Decay {
 }
 
 function backgroundSd(entry: Reading): number {
-  const size = entry.fit.ratesPerHour.length + 2
-  return Math.sqrt(Math.max(0, entry.fit.covariance[size * size - 1]!))
+  const size = entry.fit.ratesPerHour.length + 3
+  return Math.sqrt(Math.max(0, entry.fit.covariance[(size - 2) * (size + 1)]!))
 }

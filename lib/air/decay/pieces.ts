@@ -1,5 +1,4 @@
 /** What each piece of a segmented fall is: an empty room at one rate, people still or again inside, or the floor. */
-import type { PiecewiseFit } from './piecewise'
 import type { Segmented } from './segments'
 
 export type Role = 'empty' | 'people' | 'floor' | 'settling'
@@ -16,7 +15,7 @@ export type Piece = {
 /** The pieces of a fit with the standard deviation of each rate, correlated residuals counted. */
 export function piecesOf(segmented: Segmented, endH: number): Piece[] {
   const { fit, scale } = segmented
-  const size = fit.ratesPerHour.length + 2
+  const size = fit.ratesPerHour.length + 3
   const edges = [fit.fromH, ...fit.breaksH, endH]
   const pieces: Piece[] = []
   let logExcess = fit.logStartExcess
@@ -99,9 +98,4 @@ export function emptyRuns(pieces: readonly Piece[]): { from: number; to: number 
     else runs.push({ from: k, to: k })
   })
   return runs
-}
-
-/** The level of a fit at an edge of a piece, for reports. */
-export function levelAt(fit: PiecewiseFit, excessPpm: number): number {
-  return fit.backgroundPpm + excessPpm
 }

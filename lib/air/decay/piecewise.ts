@@ -1,116 +1,213 @@
 /**
  * The decay of an empty well-mixed room whose air-change rate is constant between breaks:
- *   C(t) = B + E0 exp(-integral of A),  A = A_1 before the first break, A_2 after it, …
+ *   C(t) = B + D t + E0 exp(-integral of A),  A = A_1 before the first break, A_2 after it, …
  * continuous, because the air in the room cannot jump. Fitted to readings in ppm (not to their logarithm) by Gauss-Newton with analytic
- * derivatives; the background B is an unknown with a prior N(B0, uB), so its uncertainty reaches the rates.
+ * derivatives. The background B and its slope D are unknowns with priors N(B0, uB) and N(0, uD), for outdoor air and a sensor's zero move over
+ * an evening; so what is not known of them reaches the rates.
  */
 import { invertSymmetric } from '@/lib/math/linear'
 
 /** Binned readings: time in hours from the window's origin, mean ppm, standard deviation of that mean. */
 export type Binned = { timeH: Float64Array; ppm: Float64Array; sdPpm: Float64Array }
-export type Prior = { ppm: number; sdPpm: number }
+export type Prior = { ppm: number; sdPpm: number; driftSdPpmPerHour?: number }
 
 export type PiecewiseFit = {
   breaksH: number[]
   fromH: number
   logStartExcess: number
   ratesPerHour: number[]
+  /** background at the origin of time, and its slope */
   backgroundPpm: number
-  /** weighted sum of squares with the prior's term */
+  driftPpmPerHour: number
+  /** weighted sum of squares with the priors' terms */
   chiSquared: number
-  /** covariance of [ln E0, A_1 … A_K, B] for unit weight, row by row */
+  /** covariance of [ln E0, A_1 … A_K, B, D] for unit weight, row by row */
   covariance: Float64Array
   points: number
   /** (reading - model) / sd for each bin */
   residuals: Float64Array
 }
 
-/** Hours spent in segment k up to time t. */
-function fillDurations(t: number, fromH: number, breaksH: readonly number[], into: Float64Array): void {
-  let start = fromH
-  for (let k = 0; k <= breaksH.length; k++) {
-    const end = k < breaksH.length ? breaksH[k]! : Number.POSITIVE_INFINITY
-    into[k] = t <= start ? 0 : Math.min(t, end) - start
+export type Start = {
+  logStartExcess: number
+  ratesPerHour: readonly number[]
+  backgroundPpm: number
+  driftPpmPerHour?: number
+}
+
+/** Spread of the drift where none is allowed, ppm per hour. */
+const STILL = 1e-5
+/** Excess is kept below this power of e, so that a wild step stays finite. */
+const LARGEST_EXPONENT = 12
+
+/** Model value in ppm at time t (hours); before the window the first rate is carried back. */
+export function piecewiseValue(fit: PiecewiseFit, timeH: number): number {
+  return backgroundAt(fit, timeH) + piecewiseExcess(fit, timeH)
+}
+
+/** Excess over the background at time t (hours), ppm. */
+export function piecewiseExcess(fit: PiecewiseFit, timeH: number): number {
+  let exponent = fit.logStartExcess
+  let start = fit.fromH
+  if (timeH < start) return Math.exp(exponent + fit.ratesPerHour[0]! * (start - timeH))
+  for (let k = 0; k < fit.ratesPerHour.length; k++) {
+    const end = fit.breaksH[k] ?? Number.POSITIVE_INFINITY
+    if (timeH <= start) break
+    exponent -= fit.ratesPerHour[k]! * (Math.min(timeH, end) - start)
     start = end
+  }
+  return Math.exp(exponent)
+}
+
+/** The background of a fit at an instant (hours from the origin), ppm. */
+export function backgroundAt(fit: PiecewiseFit, timeH: number): number {
+  return fit.backgroundPpm + fit.driftPpmPerHour * timeH
+}
+
+/** The parameters of a fit as a starting point for another. */
+export function startFrom(fit: PiecewiseFit): Start {
+  const { logStartExcess, ratesPerHour, backgroundPpm, driftPpmPerHour } = fit
+  return { logStartExcess, ratesPerHour, backgroundPpm, driftPpmPerHour }
+}
+
+type Work = {
+  normal: Float64Array
+  gradient: Float64Array
+  residuals: Float64Array
+  row: Float64Array
+  chiSquared: number
+}
+
+function blankWork(size: number, n: number): Work {
+  return {
+    normal: new Float64Array(size * size),
+    gradient: new Float64Array(size),
+    residuals: new Float64Array(n),
+    row: new Float64Array(size),
+    chiSquared: Number.POSITIVE_INFINITY,
   }
 }
 
-/** Model value in ppm at time t (hours). */
-export function piecewiseValue(fit: PiecewiseFit, timeH: number): number {
-  const durations = new Float64Array(fit.breaksH.length + 1)
-  fillDurations(timeH, fit.fromH, fit.breaksH, durations)
-  if (timeH < fit.fromH) durations[0] = timeH - fit.fromH
-  let exponent = fit.logStartExcess
-  for (let k = 0; k < durations.length; k++) exponent -= fit.ratesPerHour[k]! * durations[k]!
-  return fit.backgroundPpm + Math.exp(exponent)
+/** One row of derivatives at time t into `work.row`; returns the model's excess. */
+function deriveRow(work: Work, t: number, weight: number, p: Float64Array, edges: Float64Array): number {
+  const { row } = work
+  const rates = edges.length - 1
+  let exponent = p[0]!
+  for (let k = 0; k < rates; k++) {
+    const start = edges[k]!
+    const end = edges[k + 1]!
+    const spent = t <= start ? 0 : t < end ? t - start : end - start
+    row[k + 1] = -spent
+    exponent -= p[k + 1]! * spent
+  }
+  const excess = Math.exp(exponent < LARGEST_EXPONENT ? exponent : LARGEST_EXPONENT)
+  const weighted = excess * weight
+  row[0] = weighted
+  for (let k = 1; k <= rates; k++) row[k]! *= weighted
+  row[rates + 1] = weight
+  row[rates + 2] = weight * t
+  return excess
 }
-
-type Work = { normal: Float64Array; gradient: Float64Array; residuals: Float64Array; chiSquared: number }
 
 /** One pass over the readings: residuals, normal matrix and gradient at the parameters. */
 function accumulate(
   data: Binned,
-  fromH: number,
-  breaksH: readonly number[],
+  edges: Float64Array,
   p: Float64Array,
   prior: Prior | null,
   work: Work,
 ): void {
-  const rates = breaksH.length + 1
-  const size = rates + 2
-  const { normal, gradient, residuals } = work
+  const size = p.length
+  const { normal, gradient, residuals, row } = work
   normal.fill(0)
   gradient.fill(0)
-  const durations = new Float64Array(rates)
-  const row = new Float64Array(size)
-  const background = p[size - 1]!
+  const b = size - 2
+  const d = size - 1
   let chi = 0
   for (let i = 0; i < data.timeH.length; i++) {
-    fillDurations(data.timeH[i]!, fromH, breaksH, durations)
-    let exponent = p[0]!
-    for (let k = 0; k < rates; k++) exponent -= p[k + 1]! * durations[k]!
+    const t = data.timeH[i]!
     const weight = 1 / data.sdPpm[i]!
-    const excess = Math.exp(Math.min(exponent, 12))
-    const residual = (data.ppm[i]! - background - excess) * weight
+    const excess = deriveRow(work, t, weight, p, edges)
+    const residual = (data.ppm[i]! - p[b]! - p[d]! * t - excess) * weight
     residuals[i] = residual
     chi += residual * residual
-    row[0] = excess * weight
-    for (let k = 0; k < rates; k++) row[k + 1] = -excess * durations[k]! * weight
-    row[size - 1] = weight
     for (let a = 0; a < size; a++) {
       const ra = row[a]!
       if (ra === 0) continue
       gradient[a]! += ra * residual
-      for (let b = 0; b <= a; b++) normal[a * size + b]! += ra * row[b]!
+      for (let c = 0; c <= a; c++) normal[a * size + c]! += ra * row[c]!
     }
   }
-  if (prior) {
-    const weight = 1 / prior.sdPpm
-    const residual = (prior.ppm - background) * weight
-    chi += residual * residual
-    gradient[size - 1]! += weight * residual
-    normal[size * size - 1]! += weight * weight
-  }
-  for (let a = 0; a < size; a++)
-    for (let b = a + 1; b < size; b++) normal[a * size + b] = normal[b * size + a]!
+  if (prior) chi += pull(work, b, size, prior.ppm - p[b]!, prior.sdPpm)
+  chi += pull(work, d, size, -p[d]!, prior?.driftSdPpmPerHour ?? STILL)
+  for (let i = 0; i < size; i++)
+    for (let j = i + 1; j < size; j++) normal[i * size + j] = normal[j * size + i]!
   work.chiSquared = chi
 }
 
-function step(work: Work, size: number, damping: number): Float64Array | null {
+/** Adds a prior on one unknown; returns its share of chi squared. */
+function pull(work: Work, index: number, size: number, distance: number, sd: number): number {
+  const weight = 1 / (sd * sd)
+  work.gradient[index]! += weight * distance
+  work.normal[index * size + index]! += weight
+  return weight * distance * distance
+}
+
+function moveFrom(work: Work, size: number, damping: number): Float64Array | null {
   const damped = Float64Array.from(work.normal)
   for (let a = 0; a < size; a++) damped[a * size + a]! *= 1 + damping
   const inverse = invertSymmetric(damped, size)
   if (!inverse) return null
   const move = new Float64Array(size)
-  for (let a = 0; a < size; a++)
-    for (let b = 0; b < size; b++) move[a]! += inverse[a * size + b]! * work.gradient[b]!
+  for (let a = 0; a < size; a++) {
+    let sum = 0
+    for (let b = 0; b < size; b++) sum += inverse[a * size + b]! * work.gradient[b]!
+    move[a] = sum
+  }
   return move
 }
 
-export type Start = { logStartExcess: number; ratesPerHour: readonly number[]; backgroundPpm: number }
+/** Gauss-Newton with Levenberg's damping; returns the parameters and the pass made at them, or null when nothing is determined. */
+function solve(
+  data: Binned,
+  edges: Float64Array,
+  first: Float64Array,
+  prior: Prior | null,
+  iterations: number,
+) {
+  const size = first.length
+  let p = first
+  let work = blankWork(size, data.timeH.length)
+  let trial = blankWork(size, data.timeH.length)
+  accumulate(data, edges, p, prior, work)
+  let damping = 1e-4
+  for (let i = 0; i < iterations; i++) {
+    const move = moveFrom(work, size, damping)
+    if (!move) {
+      damping = Math.max(1e-3, damping * 30)
+      if (damping > 1e6) return null
+      continue
+    }
+    const next = Float64Array.from(p, (value, a) => value + move[a]!)
+    accumulate(data, edges, next, prior, trial)
+    if (!(trial.chiSquared <= work.chiSquared)) {
+      damping = Math.max(1e-3, damping * 10)
+      if (damping > 1e8) break
+      continue
+    }
+    const gain = work.chiSquared - trial.chiSquared
+    p = next
+    const spare = work
+    work = trial
+    trial = spare
+    damping = damping < 1e-7 ? 0 : damping / 10
+    if (gain < 1e-5 * (1 + work.chiSquared)) break
+  }
+  return { p, work }
+}
 
 /**
- * Fits the rates between the given breaks. `prior` null leaves the background free. Returns null when there are fewer readings than
+ * Fits the rates between the given breaks. `prior` null leaves the background free and still. Returns null when there are fewer readings than
  * unknowns or the normal matrix is singular (the readings do not determine the rates).
  */
 export function fitPiecewise(
@@ -122,54 +219,31 @@ export function fitPiecewise(
   iterations = 25,
 ): PiecewiseFit | null {
   const n = data.timeH.length
-  const size = breaksH.length + 3
-  if (n + (prior ? 1 : 0) < size) return null
-  let p = Float64Array.from([start.logStartExcess, ...start.ratesPerHour, start.backgroundPpm])
-  let work: Work = blankWork(size, n)
-  let trial: Work = blankWork(size, n)
-  accumulate(data, fromH, breaksH, p, prior, work)
-  let damping = 1e-4
-  for (let i = 0; i < iterations; i++) {
-    const move = step(work, size, damping)
-    if (!move) {
-      damping = Math.max(1e-3, damping * 30)
-      if (damping > 1e6) return null
-      continue
-    }
-    const next = p.map((value, a) => value + move[a]!)
-    accumulate(data, fromH, breaksH, next, prior, trial)
-    if (!(trial.chiSquared <= work.chiSquared)) {
-      damping = Math.max(1e-3, damping * 10)
-      if (damping > 1e8) break
-      continue
-    }
-    const gain = work.chiSquared - trial.chiSquared
-    p = next
-    ;[work, trial] = [trial, work]
-    damping = damping < 1e-7 ? 0 : damping / 10
-    if (gain < 1e-7 * (1 + work.chiSquared)) break
-  }
+  const size = breaksH.length + 4
+  if (n + (prior ? 1 : 0) < size - 1) return null
+  const first = Float64Array.from([
+    start.logStartExcess,
+    ...start.ratesPerHour,
+    start.backgroundPpm,
+    start.driftPpmPerHour ?? 0,
+  ])
+  const edges = Float64Array.from([fromH, ...breaksH, Number.POSITIVE_INFINITY])
+  const solved = solve(data, edges, first, prior, iterations)
+  if (!solved) return null
+  const { p, work } = solved
   const covariance = invertSymmetric(work.normal, size)
   if (!covariance) return null
   return {
     breaksH: [...breaksH],
     fromH,
     logStartExcess: p[0]!,
-    ratesPerHour: Array.from(p.subarray(1, size - 1)),
-    backgroundPpm: p[size - 1]!,
+    ratesPerHour: Array.from(p.subarray(1, size - 2)),
+    backgroundPpm: p[size - 2]!,
+    driftPpmPerHour: p[size - 1]!,
     chiSquared: work.chiSquared,
     covariance,
     points: n,
-    residuals: Float64Array.from(work.residuals),
-  }
-}
-
-function blankWork(size: number, n: number): Work {
-  return {
-    normal: new Float64Array(size * size),
-    gradient: new Float64Array(size),
-    residuals: new Float64Array(n),
-    chiSquared: Number.POSITIVE_INFINITY,
+    residuals: work.residuals,
   }
 }
 

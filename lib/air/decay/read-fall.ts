@@ -1,5 +1,5 @@
 /** One fall read from beginning to end: segmented, its pieces named, every empty run fitted. */
-import { DETECTION } from '@/lib/air/constants'
+import { BACKGROUND, DETECTION } from '@/lib/air/constants'
 import type { Background } from '@/lib/air/types'
 import { median } from '@/lib/math/robust'
 import { binRecord, sliceBins } from './bins'
@@ -8,7 +8,14 @@ import type { Fall } from './falls'
 import { type RateEstimate, rateEstimate, reweighed } from './interval'
 import { withMixing } from './noise'
 import { assignRoles, emptyRuns, type Piece, piecesOf } from './pieces'
-import { type Binned, fitPiecewise, type PiecewiseFit, type Prior, piecewiseValue } from './piecewise'
+import {
+  type Binned,
+  fitPiecewise,
+  type PiecewiseFit,
+  type Prior,
+  piecewiseValue,
+  startFrom,
+} from './piecewise'
 import { segmentFall } from './segments'
 
 /** One rate over one stretch of an empty room. */
@@ -36,14 +43,14 @@ export type FallReading = {
 /** Where a fall may end: a while after the level has come within noise of the background. */
 export function usefulEnd(record: CleanRecord, fall: Fall, background: Background): number {
   const start = fall.peakPpm - background.ppm
-  const floor = Math.max(8, 0.015 * start, 1.2 * record.sigmaPpm)
+  const floor = Math.max(8, 0.03 * start, 1.2 * record.sigmaPpm)
   const width = Math.max(300, record.stepS)
   const coarse = binRecord(record, fall.fromS, fall.toS, width, fall.fromS)
   for (let i = 0; i < coarse.timeH.length; i++) {
     const next = coarse.ppm[Math.min(i + 1, coarse.ppm.length - 1)]!
     if (coarse.ppm[i]! - background.ppm < floor && next - background.ppm < floor) {
       const elapsed = coarse.timeH[i]!
-      return Math.min(fall.toS, fall.fromS + (elapsed * 1.3 + 0.1) * 3600, fall.fromS + 14 * 3600)
+      return Math.min(fall.toS, fall.fromS + (elapsed * 1.15 + 0.1) * 3600, fall.fromS + 14 * 3600)
     }
   }
   return Math.min(fall.toS, fall.fromS + 14 * 3600)
@@ -53,11 +60,7 @@ function changeInterval(data: Binned, fit: PiecewiseFit, prior: Prior, index: nu
   const at = fit.breaksH[index]!
   const inside: number[] = []
   const limit = fit.chiSquared + 4.5
-  const start = {
-    logStartExcess: fit.logStartExcess,
-    ratesPerHour: fit.ratesPerHour,
-    backgroundPpm: fit.backgroundPpm,
-  }
+  const start = startFrom(fit)
   for (const direction of [-1, 1]) {
     let reach = at
     for (let i = 0; i < data.timeH.length; i++) {
@@ -121,7 +124,11 @@ export function readFall(record: CleanRecord, fall: Fall, background: Background
   const raw = binRecord(record, fall.fromS, toS, width, fall.fromS)
   if (raw.timeH.length < 4) return null
   const data = withMixing(raw, background.ppm, width)
-  const prior = { ppm: background.ppm, sdPpm: background.standardUncertaintyPpm }
+  const prior = {
+    ppm: background.ppm,
+    sdPpm: background.standardUncertaintyPpm,
+    driftSdPpmPerHour: BACKGROUND.driftPpmPerHour,
+  }
   const leastH = Math.max((2.5 * width) / 3600, 0.06)
   const segmented = segmentFall(data, prior, leastH)
   if (!segmented) return null

@@ -1,7 +1,7 @@
 /** Where the rate changes inside a fall: breaks added while they earn their keep, then taken away again while nothing is lost. */
 import { invertSymmetric } from '@/lib/math/linear'
 import { longRunScale, type Scale } from './noise'
-import { type Binned, fitPiecewise, type PiecewiseFit, type Prior, roughStart } from './piecewise'
+import { type Binned, fitPiecewise, type PiecewiseFit, type Prior, roughStart, startFrom } from './piecewise'
 
 export type Segmented = { fit: PiecewiseFit; scale: Scale }
 
@@ -13,7 +13,7 @@ const gainAsked = (n: number) => 2 * Math.log(Math.max(8, n)) + 6
 function hingeScores(data: Binned, fit: PiecewiseFit, prior: Prior | null): Float64Array {
   const n = data.timeH.length
   const rates = fit.ratesPerHour.length
-  const size = rates + 2
+  const size = rates + 3
   const columns: Float64Array[] = Array.from({ length: size }, () => new Float64Array(n))
   const excess = new Float64Array(n)
   const edges = [fit.fromH, ...fit.breaksH, Number.POSITIVE_INFINITY]
@@ -29,7 +29,8 @@ function hingeScores(data: Binned, fit: PiecewiseFit, prior: Prior | null): Floa
     excess[i] = Math.exp(Math.min(12, exponent)) * w
     columns[0]![i] = excess[i]!
     for (let k = 0; k < rates; k++) columns[k + 1]![i] = -excess[i]! * durations[k]!
-    columns[size - 1]![i] = w
+    columns[size - 2]![i] = w
+    columns[size - 1]![i] = w * data.timeH[i]!
   }
   const normal = new Float64Array(size * size)
   for (let a = 0; a < size; a++)
@@ -38,7 +39,8 @@ function hingeScores(data: Binned, fit: PiecewiseFit, prior: Prior | null): Floa
       for (let i = 0; i < n; i++) sum += columns[a]![i]! * columns[b]![i]!
       normal[a * size + b] = sum
     }
-  if (prior) normal[size * size - 1]! += 1 / prior.sdPpm ** 2
+  if (prior) normal[(size - 2) * size + size - 2]! += 1 / prior.sdPpm ** 2
+  normal[size * size - 1]! += 1 / (prior?.driftSdPpmPerHour ?? 1e-5) ** 2
   const inverse = invertSymmetric(normal, size)
   const scores = new Float64Array(n)
   if (!inverse) return scores
@@ -76,11 +78,7 @@ function refit(
   }
   const edges = [like.fromH, ...sorted, data.timeH[data.timeH.length - 1]!]
   const rates = edges.slice(1).map((end, k) => rateAt((edges[k]! + end) / 2))
-  const start = {
-    logStartExcess: like.logStartExcess,
-    ratesPerHour: rates,
-    backgroundPpm: like.backgroundPpm,
-  }
+  const start = { ...startFrom(like), ratesPerHour: rates }
   return fitPiecewise(data, like.fromH, sorted, prior, start, iterations)
 }
 
