@@ -1,5 +1,5 @@
 /** Runs the analysis over every local day of a spilled record: first each night's floor, then each day's decays. */
-import { analyseBuildingDay, nightFloor, type RoomHistory } from '@/lib/air/analyse-building'
+import { analyseBuildingDay, nightFloor, type RoomHistory, sureRates } from '@/lib/air/analyse-building'
 import type { QuietFloor } from '@/lib/air/decay/floor'
 import type { SupplyStop } from '@/lib/air/decay/modes'
 import type { Series } from '@/lib/air/types'
@@ -49,11 +49,15 @@ function collectFloors(file: RoomsFile, spill: Spill): QuietFloor[][] {
 export function analyseDays(file: RoomsFile, spill: Spill, hasOutdoor: boolean): string[] {
   const floors = collectFloors(file, spill)
   const lines: string[][] = file.rooms.map(() => [])
+  const rates: number[][] = file.rooms.map(() => [])
   const stops = new Map<string, Stops>()
   for (const day of localDays(spill, file.timeZone)) {
     const rooms = file.rooms.map((room, index) => {
       const near = (floor: QuietFloor) => Math.abs(floor.atS - day.startS) < FLOOR_NIGHTS * 86_400
-      const history: RoomHistory = { quietFloors: floors[index]!.filter(near) }
+      const history: RoomHistory = {
+        quietFloors: floors[index]!.filter(near),
+        recentRates: rates[index]!.slice(-12),
+      }
       if (room.airHandler !== undefined) history.supplyStops = (stops.get(room.airHandler) ?? []).slice(-14)
       return { room, series: window(spill, index, day), history }
     })
@@ -69,6 +73,7 @@ export function analyseDays(file: RoomsFile, spill: Spill, hasOutdoor: boolean):
     })
     result.forEach((roomDay, index) => {
       for (const decay of roomDay.decays) lines[index]!.push(JSON.stringify(decayRecord(decay)))
+      rates[index]!.push(...sureRates(roomDay))
       const handler = file.rooms[index]!.airHandler
       if (handler === undefined) return
       const kept = stops.get(handler) ?? []

@@ -2,18 +2,22 @@
  * One building, one local day: every decay that starts on it, in every room, with what rooms know of each other. The nightly job, the command
  * `analyse` and the tests all call this; it reads no clock, no file and no database.
  */
+import { PEOPLE } from './constants'
 import { estimateBackground, outdoorLevel } from './decay/background'
 import { cleanRecord } from './decay/clean'
 import { type Fall, findFalls, levelTrack, type Track } from './decay/falls'
 import { lowestLevel, type QuietFloor, restingLevels } from './decay/floor'
 import { modeOf, type RateDrop, type SupplyStop, sharedStops } from './decay/modes'
 import { decayOf, refusedDecay } from './decay/outcome'
-import { type FallReading, readFall } from './decay/read-fall'
+import { peopleProbability, rateEvidence, shapeEvidence } from './decay/people'
+import { type FallReading, type Reading, readFall } from './decay/read-fall'
 import type { Background, Decay, RoomSpec, Series, SupplyChange } from './types'
 
 /** What earlier nights left behind for a room. */
 export type RoomHistory = {
   quietFloors: readonly QuietFloor[]
+  /** sure rates of this room from the last nights, 1/h */
+  recentRates?: readonly number[]
   /** earlier nights on which this room's air handler was seen to stop, seconds after local midnight */
   supplyStops?: readonly { date: string; clockS: number; to: SupplyStop['to'] }[]
 }
@@ -106,6 +110,15 @@ function prepare(
   return { input, record, floor: nightsFloor(track, all, day), falls }
 }
 
+/** The rates of a finished day that later nights may lean on: accepted, and long enough to be sure. */
+export function sureRates(day: RoomDay): number[] {
+  return day.decays.flatMap((decay) => {
+    const rate = decay.airChangeRatePerHour
+    const long = rate !== null && rate * (decay.endS - decay.startS) > 1.2 * 3600
+    return decay.quality === 'accepted' && long ? [rate] : []
+  })
+}
+
 /** Rate drops of every room of one air handler, to be compared. */
 function dropsOf(prepared: readonly Prepared[]): RateDrop[] {
   const drops: RateDrop[] = []
@@ -145,20 +158,50 @@ export function analyseBuildingDay(day: BuildingDay): RoomDay[] {
   return prepared.map((room) => finish(day, room, stops.get(room.input.room.airHandler ?? '') ?? []))
 }
 
+type ReadFall = Prepared['falls'][number]
+type Weighed = { entry: Reading; room: ReadFall; evidence: number; before: number }
+
+/** Weighs for every reading whether the room was empty; rates that are sure help to judge the others. */
+function weighPeople({ input, falls }: Prepared): Weighed[] {
+  const weighed: Weighed[] = falls.flatMap((room, k) => {
+    const next = falls[k + 1]
+    const quiet = !next || next.fall.fromS - room.fall.toS > PEOPLE.quietS
+    const before = quiet ? PEOPLE.beforeQuiet : PEOPLE.beforeDay
+    return (room.reading?.readings ?? []).map((entry) => {
+      const evidence = shapeEvidence(entry, room.reading!.prior, input.room.volumeM3)
+      return { entry, room, evidence, before }
+    })
+  })
+  const sure = weighed.filter(
+    ({ evidence, before }) => peopleProbability(evidence, before) < PEOPLE.doubtful / 2,
+  )
+  return weighed.map((own) => {
+    const others = sure
+      .filter((other) => other.entry !== own.entry)
+      .map((other) => other.entry.piece.ratePerHour)
+    const known = [...others, ...(input.history?.recentRates ?? [])]
+    return { ...own, evidence: own.evidence + rateEvidence(own.entry, known) }
+  })
+}
+
 function finish(day: BuildingDay, prepared: Prepared, stops: SupplyStop[]): RoomDay {
   const { input, record, floor, falls } = prepared
   const notes: RoomNote[] = []
   const decays: Decay[] = []
   let used: Background | null = null
+  const weighed = weighPeople(prepared)
   for (const { reading, background, fall } of falls) {
     used ??= background
     const own = reading?.readings ?? []
     if (own.length === 0)
       decays.push(refusedDecay({ day, room: input.room, fall, reading, background, record }))
-    for (const entry of own) {
+    for (const { entry, evidence, before } of weighed.filter((w) => own.includes(w.entry))) {
+      const people = peopleProbability(evidence, before)
       const mode = modeOf(input.room, entry, { supply: input.supply, stops, timeZone: day.timeZone })
       if (mode.disagrees) noteEarlyStop(notes, stops)
-      decays.push(decayOf({ day, room: input.room, entry, reading: reading!, background, record, mode }))
+      decays.push(
+        decayOf({ day, room: input.room, entry, reading: reading!, background, record, mode, people }),
+      )
     }
   }
   for (const cut of record.stuck) {

@@ -65,6 +65,18 @@ export const BACKGROUND = {
   leastPpm: 5,
 } as const
 
+/**
+ * Somebody inside (chosen): how likely before the readings are weighed, when the room fills again within hours and when it stays quiet; and the
+ * probabilities from which a figure is doubtful, or not given.
+ */
+export const PEOPLE = {
+  beforeDay: 0.5,
+  beforeQuiet: 0.12,
+  quietS: 4 * 3600,
+  doubtful: 0.04,
+  refused: 0.6,
+} as const
+
 /** CO2 of one quiet grown person, L/s at room conditions: the smallest source that a test for people must see (Persily and de Jonge 2017, 1.0 met). */
 export const QUIET_PERSON_LPS = 0.0042
 

@@ -1,4 +1,5 @@
 /** Puts a reading, its verdict and its mode together into the decay that everyone sees. */
+import { PEOPLE } from '@/lib/air/constants'
 import type { Background, Decay, Reason, RoomSpec } from '@/lib/air/types'
 import { meanAgeMinutes } from '@/lib/units'
 import type { CleanRecord } from './clean'
@@ -78,12 +79,17 @@ export type Outcome = {
   background: Background
   record: CleanRecord
   mode: Moded
+  /** probability that somebody was inside */
+  people: number
 }
 
-function suspicionOf({ room }: Outcome): Suspicion {
+function suspicionOf({ room, people }: Outcome): Suspicion {
   const doubts: Reason[] = []
+  const refusals: Reason[] = []
   if (room.air === 'recirculating') doubts.push('recirculation-possible')
-  return { doubts, refusals: [] }
+  if (people > PEOPLE.refused) refusals.push('people-present')
+  else if (people > PEOPLE.doubtful) doubts.push('people-present')
+  return { doubts, refusals }
 }
 
 /** The decay of one reading: rate or bound, interval, mode, quality, reasons, checks and a sentence. */

@@ -23,6 +23,8 @@ export type Reading = {
   fromS: number
   toS: number
   piece: Piece
+  /** which rate of the fit */
+  index: number
   estimate: RateEstimate
   fit: PiecewiseFit
   data: Binned
@@ -38,6 +40,7 @@ export type FallReading = {
   peopleInside: boolean
   pieces: Piece[]
   data: Binned
+  prior: Prior
 }
 
 /** Where a fall may end: a while after the level has come within noise of the background. */
@@ -109,6 +112,7 @@ function readRun(data: Binned, pieces: readonly Piece[], prior: Prior, originS: 
     fromS: originS + piece.fromH * 3600,
     toS: originS + piece.toH * 3600,
     piece,
+    index: k,
     estimate: rateEstimate(weighed, k, 0.008, residualSd(part, weighed.fit)),
     fit: weighed.fit,
     data: part,
@@ -140,5 +144,5 @@ export function readFall(record: CleanRecord, fall: Fall, background: Background
     readings.push(...readRun(data, pieces.slice(run.from, run.to + 1), prior, fall.fromS))
   const firstEmpty = pieces.findIndex((piece) => piece.role === 'empty')
   const left = firstEmpty >= 0 ? fall.fromS + pieces[firstEmpty]!.fromH * 3600 : null
-  return { fall, lastPersonLeftS: left, readings, peopleInside: firstEmpty < 0, pieces, data }
+  return { fall, lastPersonLeftS: left, readings, peopleInside: firstEmpty < 0, pieces, data, prior }
 }

@@ -1,0 +1,60 @@
+/**
+ * Was the room empty? Somebody inside adds a steady source, so that the level ebbs towards a floor above the background and the rate looks too
+ * slow (local rate A (E - Es) / E). The readings' own opinion of the floor is weighed against the known background, for the smallest source that
+ * would matter: one quiet person, or a rate wrong by a fifth.
+ */
+import { QUIET_PERSON_LPS } from '@/lib/air/constants'
+import type { Prior } from './piecewise'
+import type { Reading } from './read-fall'
+
+/** A share by which people may falsify a rate before it matters. */
+const MATTERS = 1.2
+
+/** Excess in ppm that a steady source (L/s) keeps up in a room of `volumeM3` at a rate (1/h): 3.6e6 g / (A V). */
+export function steadyExcessPpm(sourceLps: number, ratePerHour: number, volumeM3: number): number {
+  return (3.6e6 * sourceLps) / (ratePerHour * volumeM3)
+}
+
+/**
+ * Log likelihood ratio of "empty" over "somebody inside" from the shape of one decay alone; positive speaks for empty. To first order: the rate
+ * and the floor are jointly normal, and the prior on the background is taken out of the fit again.
+ */
+export function shapeEvidence(reading: Reading, prior: Prior, volumeM3: number): number {
+  const { fit, piece, index } = reading
+  const size = fit.ratesPerHour.length + 3
+  const b = size - 2
+  const a = index + 1
+  const variance = fit.covariance[b * size + b]!
+  const pull = fit.covariance[a * size + b]! / variance / piece.ratePerHour
+  const matters = pull > 1e-6 ? Math.log(MATTERS) / pull : 1e3
+  const onePerson = 0.7 * steadyExcessPpm(QUIET_PERSON_LPS, Math.max(0.05, piece.ratePerHour), volumeM3)
+  const smallest = Math.max(matters, onePerson)
+  // a level cannot ebb below the floor that a source keeps up
+  if (piece.endExcessPpm < 0.75 * smallest - 2 * prior.sdPpm) return 8
+  const information = Math.max(1e-9, 1 / variance - 1 / prior.sdPpm ** 2)
+  const seen = (fit.backgroundPpm / variance - prior.ppm / prior.sdPpm ** 2) / information - prior.ppm
+  const spread = prior.sdPpm ** 2 + 1 / information
+  const lift = Math.max(smallest, seen)
+  return Math.min(8, ((seen - lift) ** 2 - seen ** 2) / (2 * spread))
+}
+
+/** Log likelihood ratio of "empty" from rates that this room is known to have: near one of them speaks for empty, below them all a little against. */
+export function rateEvidence(reading: Reading, known: readonly number[]): number {
+  if (known.length === 0) return 0
+  const { regression, background } = reading.estimate.parts
+  const sd = Math.hypot(0.06, regression, background)
+  const own = Math.log(Math.max(0.01, reading.piece.ratePerHour))
+  let best = Number.NEGATIVE_INFINITY
+  for (const rate of known) {
+    const z = (own - Math.log(rate)) / sd
+    best = Math.max(best, -0.5 * z * z - Math.log(sd * Math.sqrt(2 * Math.PI)))
+  }
+  // with people inside, the apparent rate may lie anywhere over about one and a half in ln A
+  return Math.max(-2, best + Math.log(1.5))
+}
+
+/** Probability that somebody was inside, from the evidence and how likely that is at such a time. */
+export function peopleProbability(evidence: number, before: number): number {
+  const odds = (before / (1 - before)) * Math.exp(-evidence)
+  return odds / (1 + odds)
+}
