@@ -1,27 +1,20 @@
-import { createHash } from 'node:crypto'
 import { eq, min } from 'drizzle-orm'
+import { notifyLive } from '@/db/changes/notice'
 import type { Tx } from '@/db/client'
 import { newPublicId } from '@/db/public-id'
 import {
   airHandlers,
-  bases,
   buildings,
   closures,
   floors,
   hours,
   organizations,
   placements,
-  roomDesigns,
-  rooms,
-  roomTenancies,
   sensors,
   tenancies,
 } from '@/db/schema'
-import { deviceIdKey } from '@/lib/wire/topics'
-import { sensorSecret } from '../demo-files'
-import { dateOf } from '../local-time'
-import type { CorridorPlan, RoomPlan } from '../scenario'
 import type { World } from '../world'
+import { byKey, type Here, insertRooms, insertSensors, secretHash } from './rooms'
 
 /** The demo building's rows; `sensorIds` in the order of the plan's sensors. */
 export type DemoIds = {
@@ -32,8 +25,6 @@ export type DemoIds = {
   /** null where a person has retired the sensor since */
   sensorIds: (number | null)[]
 }
-
-const YEAR_S = 365 * 86400
 
 /** The building of the plan if it stands already, with the start of its history (epoch seconds). */
 export async function findDemo(
@@ -89,12 +80,6 @@ export async function buildDemo(tx: Tx, world: World, key: string): Promise<Demo
   const roomIds = await insertRooms(tx, world, here, { floorIds, handlerIds, tenancyIds }, start)
   const sensorIds = await insertSensors(tx, world, here, roomIds, key, start)
   return { ...here, tenancyIds, sensorIds }
-}
-
-type Here = { organizationId: number; buildingId: number }
-
-function byKey(keys: readonly string[], rows: readonly { id: number }[]): Record<string, number> {
-  return Object.fromEntries(keys.map((key, i) => [key, rows[i]!.id]))
 }
 
 async function insertOrganization(tx: Tx, world: World, start: Date): Promise<number> {
@@ -170,143 +155,6 @@ async function insertTenancies(
   return ids
 }
 
-async function insertBases(tx: Tx, organizationId: number): Promise<{ standard: number; design: number }> {
-  const rows = await tx
-    .insert(bases)
-    .values([
-      {
-        organizationId,
-        name: 'EN 16798-1:2019 category II, low-polluting building',
-        kind: 'per-person',
-        flowLpsPerPerson: 7,
-        flowLpsPerM2: 0.7,
-      },
-      { organizationId, name: 'Design flow of the room', kind: 'design-flow' },
-    ])
-    .returning({ id: bases.id })
-  return { standard: rows[0]!.id, design: rows[1]!.id }
-}
-
-type Keys = {
-  floorIds: Record<string, number>
-  handlerIds: Record<string, number>
-  tenancyIds: Record<string, number>
-}
-
-async function insertRooms(
-  tx: Tx,
-  world: World,
-  here: Here,
-  keys: Keys,
-  start: Date,
-): Promise<Record<string, number>> {
-  const basis = await insertBases(tx, here.organizationId)
-  const values = world.zones.map((zone) => roomRow(zone, here, keys, basis, start))
-  const rows = await tx.insert(rooms).values(values).returning({ id: rooms.id })
-  const ids = byKey(
-    world.zones.map((zone) => zone.number),
-    rows,
-  )
-  await tx.insert(roomDesigns).values(
-    world.zones.map((zone) => ({
-      organizationId: here.organizationId,
-      roomId: ids[zone.number]!,
-      validFrom: dateOf(Math.floor((world.historyStartS - 2 * YEAR_S) / 86400)),
-      volumeM3: zone.volumeM3,
-      floorAreaM2: zone.floorAreaM2,
-      designHeadcount: 'activity' in zone ? zone.designHeadcount : 0,
-      permittedOccupancy: 'activity' in zone ? zone.permittedOccupancy : null,
-      designFlowLps: 'activity' in zone ? zone.designFlowLps : null,
-    })),
-  )
-  const held = world.scenario.rooms.filter((room) => room.tenancy !== null)
-  await tx.insert(roomTenancies).values(
-    held.map((room) => ({
-      organizationId: here.organizationId,
-      roomId: ids[room.number]!,
-      tenancyId: keys.tenancyIds[room.tenancy!]!,
-      fromAt: new Date((world.historyStartS - YEAR_S) * 1000),
-    })),
-  )
-  await joinNeighbour(tx, world, ids)
-  return ids
-}
-
-function roomRow(
-  zone: RoomPlan | CorridorPlan,
-  here: Here,
-  keys: Keys,
-  basis: { standard: number; design: number },
-  start: Date,
-): typeof rooms.$inferInsert {
-  const room = 'activity' in zone ? zone : null
-  return {
-    ...here,
-    publicId: newPublicId(),
-    floorId: keys.floorIds[zone.floor]!,
-    airHandlerId: zone.airHandler === null ? null : keys.handlerIds[zone.airHandler]!,
-    kind: room ? 'room' : 'corridor',
-    number: zone.number,
-    name: zone.name,
-    use: room?.use ?? 'landing',
-    airSystem: room?.airSystem ?? null,
-    singlePerson: room?.singlePerson ?? false,
-    basisId: room ? (room.designFlowLps === null ? basis.standard : basis.design) : null,
-    createdAt: start,
-  }
-}
-
-/** The plan shows which room's door stands open to its landing. */
-async function joinNeighbour(tx: Tx, world: World, ids: Record<string, number>): Promise<void> {
-  const { room: number } = world.story.openDoor
-  const room = world.scenario.rooms.find((r) => r.number === number)!
-  const landing = world.zones[world.corridorOfFloor.get(room.floor)!]!
-  await tx.update(rooms).set({ neighbourRoomId: ids[landing.number]! }).where(eq(rooms.id, ids[number]!))
-}
-
-const secretHash = (key: string, deviceId: string) =>
-  createHash('sha256').update(sensorSecret(key, deviceId)).digest('hex')
-
-async function insertSensors(
-  tx: Tx,
-  world: World,
-  here: Here,
-  roomIds: Record<string, number>,
-  key: string,
-  start: Date,
-): Promise<number[]> {
-  const plans = world.scenario.sensors
-  const rows = await tx
-    .insert(sensors)
-    .values(
-      plans.map(({ deviceId, label, model }) => ({
-        ...here,
-        deviceId,
-        deviceIdKey: deviceIdKey(deviceId),
-        label,
-        secretSha256: secretHash(key, deviceId),
-        intervalS: 60,
-        accuracyPpm: model.accuracyPpm,
-        accuracyPct: model.accuracyPct,
-        resolutionPpm: model.resolutionPpm,
-        rangeMaxPpm: model.rangeMaxPpm,
-        createdAt: start,
-      })),
-    )
-    .returning({ id: sensors.id })
-  await tx.insert(placements).values(
-    plans.map(({ place, position, lead }, i) => ({
-      ...here,
-      sensorId: rows[i]!.id,
-      roomId: place === null ? null : roomIds[place]!,
-      position,
-      lead,
-      fromAt: start,
-    })),
-  )
-  return rows.map((row) => row.id)
-}
-
 /** The rows of a demo that stands already; its sensors get the secrets of this data folder's key (a new folder has a new key). */
 export async function adoptDemo(tx: Tx, world: World, here: Here, key: string): Promise<DemoIds> {
   const tenancyRows = await tx
@@ -325,12 +173,12 @@ export async function adoptDemo(tx: Tx, world: World, here: Here, key: string): 
     .where(eq(sensors.buildingId, here.buildingId))
   const plans = world.scenario.sensors
   const own = plans.map(({ deviceId }) => sensorRows.find((row) => row.deviceId === deviceId))
-  for (const row of own) {
-    if (!row) continue
-    const secretSha256 = secretHash(key, row.deviceId)
-    if (row.secretSha256 !== secretSha256)
-      await tx.update(sensors).set({ secretSha256 }).where(eq(sensors.id, row.id))
+  const changed = own.filter((row) => row && row.secretSha256 !== secretHash(key, row.deviceId))
+  for (const row of changed) {
+    const secretSha256 = secretHash(key, row!.deviceId)
+    await tx.update(sensors).set({ secretSha256 }).where(eq(sensors.id, row!.id))
   }
+  if (changed.length > 0) await notifyLive(tx, 'sensors', [here.buildingId])
   const keys = world.scenario.tenancies.map((plan) => plan.key)
   return {
     organizationId: here.organizationId,
