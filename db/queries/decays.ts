@@ -33,6 +33,10 @@ export const summaryColumns = {
     AND v.withdrawn_at IS NULL AND v.from_at < ${decays.endAt} AND v.to_at > ${decays.startAt} ORDER BY v.created_at DESC LIMIT 1)`,
 }
 
+/** No decision in force covers any part of the decay. */
+const undecided = sql`NOT EXISTS (SELECT FROM ${decayReviews} v WHERE v.sensor_id = ${decays.sensorId}
+    AND v.withdrawn_at IS NULL AND v.from_at < ${decays.endAt} AND v.to_at > ${decays.startAt})`
+
 export type DecayFilter = {
   buildingId: number
   show: 'to review' | 'accepted' | 'doubtful' | 'refused' | 'all'
@@ -47,8 +51,6 @@ export type DecayFilter = {
 
 /** Decays of lead sensors in force (not superseded), newest first. "To review" are doubtful ones without a decision. */
 export async function listDecays(tx: Tx, filter: DecayFilter): Promise<DecaySummary[]> {
-  const undecided = sql`NOT EXISTS (SELECT FROM ${decayReviews} v WHERE v.sensor_id = ${decays.sensorId}
-    AND v.withdrawn_at IS NULL AND v.from_at < ${decays.endAt} AND v.to_at > ${decays.startAt})`
   return tx
     .select(summaryColumns)
     .from(decays)
@@ -78,9 +80,14 @@ export async function listDecays(tx: Tx, filter: DecayFilter): Promise<DecaySumm
 export async function countDecays(
   tx: Tx,
   { buildingId, sinceNight }: { buildingId: number; sinceNight: string },
-): Promise<Record<'accepted' | 'doubtful' | 'refused', number>> {
-  const rows = await tx
-    .select({ quality: decays.quality, n: sql<number>`count(*)::int` })
+): Promise<Record<'to review' | 'accepted' | 'doubtful' | 'refused', number>> {
+  const [row] = await tx
+    .select({
+      'to review': sql<number>`count(*) FILTER (WHERE ${decays.quality} = 'doubtful' AND ${undecided})::int`,
+      accepted: sql<number>`count(*) FILTER (WHERE ${decays.quality} = 'accepted')::int`,
+      doubtful: sql<number>`count(*) FILTER (WHERE ${decays.quality} = 'doubtful')::int`,
+      refused: sql<number>`count(*) FILTER (WHERE ${decays.quality} = 'refused')::int`,
+    })
     .from(decays)
     .where(
       and(
@@ -90,9 +97,7 @@ export async function countDecays(
         gte(decays.night, sinceNight),
       ),
     )
-    .groupBy(decays.quality)
-  const of = (quality: string) => rows.find((row) => row.quality === quality)?.n ?? 0
-  return { accepted: of('accepted'), doubtful: of('doubtful'), refused: of('refused') }
+  return row ?? { 'to review': 0, accepted: 0, doubtful: 0, refused: 0 }
 }
 
 /** The other decays of this sensor nearest in time, to compare with: at most `limit`, same mode first. */
