@@ -37,7 +37,8 @@ export type SignInState = { result: ActionResult<void>; email: string } | null
 /** The sign-in form's action; also works where the page's script does not run. */
 export async function signIn(_earlier: unknown, form: FormData): Promise<SignInState> {
   const result = await byPassword(form)
-  return { result, email: String(form.get('email') ?? '').slice(0, 254) }
+  const email = form instanceof FormData ? String(form.get('email') ?? '') : ''
+  return { result, email: email.slice(0, 254) }
 }
 
 /** Signs in one person of the demo without a password; refused where the demo's sign-ins are not offered. */

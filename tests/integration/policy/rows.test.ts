@@ -4,8 +4,8 @@ import { afterAll, beforeAll, describe, expect, test } from 'vitest'
 import type { Tx } from '@/db/client'
 import type { Role } from '@/lib/policy/roles'
 import { type Scope, scopeOf, wallScopeOf } from '@/lib/policy/scope'
-import { createTestDatabase, type TestDatabase } from '../support/database'
-import { makeSmallOrganization, type SmallOrganization } from '../support/small-building'
+import { createTestDatabase, type TestDatabase } from '../../support/database'
+import { makeSmallOrganization, type SmallOrganization } from '../../support/small-building'
 
 /** Row-level security by itself: what a transaction sees with a scope, without a query's own WHERE. Expectations written by hand. */
 let db: TestDatabase
