@@ -1,3 +1,4 @@
+import { invertSymmetric } from '@/lib/math/linear'
 import { median } from '@/lib/math/robust'
 import type { Sample } from './types'
 
@@ -34,7 +35,7 @@ export function noiseOf(values: readonly number[]): number {
   return (1.4826 * median(thirds)) / Math.sqrt(20)
 }
 
-/** Least-squares polynomial through (x, y), value at x = 0 with its standard error per unit of y noise. */
+/** Least-squares polynomial through (x, y): value at x = 0, and its standard error per unit of y noise. */
 function extrapolateToZero(
   x: readonly number[],
   y: readonly number[],
@@ -42,34 +43,19 @@ function extrapolateToZero(
 ): { value: number; gain: number } {
   const scale = x.at(-1)!
   const size = degree + 1
-  const normal = Array.from({ length: size }, () => new Array<number>(size).fill(0))
-  const right = new Array<number>(size).fill(0)
+  const normal = new Float64Array(size * size)
+  const right = new Float64Array(size)
   x.forEach((xi, i) => {
     for (let r = 0; r < size; r++) {
       right[r]! += (xi / scale) ** r * y[i]!
-      for (let c = 0; c < size; c++) normal[r]![c]! += (xi / scale) ** (r + c)
+      for (let c = 0; c < size; c++) normal[r * size + c]! += (xi / scale) ** (r + c)
     }
   })
-  const solve = (rhs: readonly number[]) => {
-    const rows = normal.map((row, r) => [...row, rhs[r]!])
-    for (let p = 0; p < size; p++) {
-      for (let r = p + 1; r < size; r++) {
-        const factor = rows[r]![p]! / rows[p]![p]!
-        for (let c = p; c <= size; c++) rows[r]![c]! -= factor * rows[p]![c]!
-      }
-    }
-    const out = new Array<number>(size).fill(0)
-    for (let r = size - 1; r >= 0; r--) {
-      let rest = rows[r]![size]!
-      for (let c = r + 1; c < size; c++) rest -= rows[r]![c]! * out[c]!
-      out[r] = rest / rows[r]![r]!
-    }
-    return out
-  }
-  // variance of the intercept is the corner of the inverse normal matrix
-  const unit = new Array<number>(size).fill(0)
-  unit[0] = 1
-  return { value: solve(right)[0]!, gain: Math.sqrt(Math.max(0, solve(unit)[0]!)) }
+  const inverse = invertSymmetric(normal, size)
+  if (!inverse) return { value: 0, gain: 0 }
+  let value = 0
+  for (let c = 0; c < size; c++) value += inverse[c]! * right[c]!
+  return { value, gain: Math.sqrt(inverse[0]!) }
 }
 
 const LEAST_JUMP = 0.03

@@ -2,7 +2,17 @@
 import { biasCorrectedCorrelation, lagOneCorrelation } from '@/lib/math/autocorrelation'
 import { t95 } from '@/lib/math/student-t'
 import { longRunScale } from './noise'
-import { type Binned, fitPiecewise, type PiecewiseFit, type Prior, startFrom } from './piecewise'
+import {
+  type Binned,
+  fitPiecewise,
+  type PiecewiseFit,
+  type Prior,
+  piecewiseValue,
+  startFrom,
+} from './piecewise'
+
+/** Standard uncertainty of ln A from what no single model says: wind, doors, choice of window (chosen; checked by the coverage suites). */
+const MODEL_SHARE = 0.014
 
 export type RateEstimate = {
   ratePerHour: number
@@ -45,16 +55,25 @@ export function logRateUncertainty(fit: PiecewiseFit, k: number): { regression: 
   }
 }
 
-/** The estimate of rate k with its interval on the scale of ln A. `model` is the standard uncertainty from the choice of window and model. */
+/** Root mean square distance between readings and fit, ppm. */
+export function residualSd(data: Binned, fit: PiecewiseFit): number {
+  let sum = 0
+  for (let i = 0; i < data.timeH.length; i++) sum += (data.ppm[i]! - piecewiseValue(fit, data.timeH[i]!)) ** 2
+  return Math.sqrt(sum / Math.max(1, data.timeH.length - 3))
+}
+
+/** The estimate of rate k with its interval on the scale of ln A. `stepS` is the time between readings. */
 export function rateEstimate(
   weighed: ReturnType<typeof reweighed>,
   k: number,
-  model: number,
   residualSdPpm: number,
+  stepS: number,
 ): RateEstimate {
   const { fit } = weighed
   const ratePerHour = fit.ratesPerHour[k]!
   const { regression, background } = logRateUncertainty(fit, k)
+  // the rate itself wanders, a little less over a long window; coarse sampling hides where the window really starts
+  const model = Math.hypot(MODEL_SHARE, 0.02 * Math.min(2, (stepS / 3600) * Math.abs(ratePerHour)))
   const { degreesOfFreedom } = weighed.scale
   const half = Math.hypot(t95(degreesOfFreedom) * regression, 1.96 * background, 1.96 * model)
   return {

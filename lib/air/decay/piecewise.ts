@@ -100,7 +100,7 @@ function deriveRow(work: Work, t: number, weight: number, p: Float64Array, edges
     row[k + 1] = -spent
     exponent -= p[k + 1]! * spent
   }
-  const excess = Math.exp(exponent < LARGEST_EXPONENT ? exponent : LARGEST_EXPONENT)
+  const excess = Math.exp(Math.min(exponent, LARGEST_EXPONENT))
   const weighted = excess * weight
   row[0] = weighted
   for (let k = 1; k <= rates; k++) row[k]! *= weighted

@@ -5,17 +5,10 @@ import { median } from '@/lib/math/robust'
 import { binRecord, sliceBins } from './bins'
 import type { CleanRecord } from './clean'
 import type { Fall } from './falls'
-import { type RateEstimate, rateEstimate, reweighed } from './interval'
+import { type RateEstimate, rateEstimate, residualSd, reweighed } from './interval'
 import { withMixing } from './noise'
 import { assignRoles, emptyRuns, type Piece, piecesOf } from './pieces'
-import {
-  type Binned,
-  fitPiecewise,
-  type PiecewiseFit,
-  type Prior,
-  piecewiseValue,
-  startFrom,
-} from './piecewise'
+import { type Binned, fitPiecewise, type PiecewiseFit, type Prior, startFrom } from './piecewise'
 import { segmentFall } from './segments'
 
 /** One rate over one stretch of an empty room. */
@@ -85,15 +78,14 @@ function changeInterval(data: Binned, fit: PiecewiseFit, prior: Prior, index: nu
   }
 }
 
-/** Root mean square distance between readings and fit, ppm. */
-function residualSd(data: Binned, fit: PiecewiseFit): number {
-  let sum = 0
-  for (let i = 0; i < data.timeH.length; i++) sum += (data.ppm[i]! - piecewiseValue(fit, data.timeH[i]!)) ** 2
-  return Math.sqrt(sum / Math.max(1, data.timeH.length - 3))
-}
-
 /** Fits one empty run jointly: every piece its own rate, one background. */
-function readRun(data: Binned, pieces: readonly Piece[], prior: Prior, originS: number): Reading[] {
+function readRun(
+  data: Binned,
+  pieces: readonly Piece[],
+  prior: Prior,
+  originS: number,
+  stepS: number,
+): Reading[] {
   const fromH = pieces[0]!.fromH
   const part = sliceBins(data, fromH, pieces[pieces.length - 1]!.toH)
   if (part.timeH.length < pieces.length + 3) return []
@@ -113,7 +105,7 @@ function readRun(data: Binned, pieces: readonly Piece[], prior: Prior, originS: 
     toS: originS + piece.toH * 3600,
     piece,
     index: k,
-    estimate: rateEstimate(weighed, k, 0.008, residualSd(part, weighed.fit)),
+    estimate: rateEstimate(weighed, k, residualSd(part, weighed.fit), stepS),
     fit: weighed.fit,
     data: part,
     changeAtStart: changes[k - 1] ?? null,
@@ -141,7 +133,7 @@ export function readFall(record: CleanRecord, fall: Fall, background: Background
   const pieces = assignRoles(piecesOf(segmented, endH), floorPpm)
   const readings: Reading[] = []
   for (const run of emptyRuns(pieces))
-    readings.push(...readRun(data, pieces.slice(run.from, run.to + 1), prior, fall.fromS))
+    readings.push(...readRun(data, pieces.slice(run.from, run.to + 1), prior, fall.fromS, record.stepS))
   const firstEmpty = pieces.findIndex((piece) => piece.role === 'empty')
   const left = firstEmpty >= 0 ? fall.fromS + pieces[firstEmpty]!.fromH * 3600 : null
   return { fall, lastPersonLeftS: left, readings, peopleInside: firstEmpty < 0, pieces, data, prior }

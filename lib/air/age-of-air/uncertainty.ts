@@ -1,0 +1,124 @@
+import { seededRandom } from '@/lib/math/seeded'
+import { noiseOf, tidy } from './curve'
+import { type FiguresAndMoments, figuresOf, flatten } from './figures'
+import { type NormalisedTest, normaliseTest } from './normalise'
+import type { Sample, TracerTest } from './types'
+
+/** Copies of the test with fresh noise; enough for a standard uncertainty to within 6 %. */
+const COPIES = 120
+const SEED = 20260301
+
+function noisyCopy(test: TracerTest, random: ReturnType<typeof seededRandom>): TracerTest {
+  const shake = (samples: readonly Sample[]): Sample[] => {
+    const clean = tidy(samples)
+    const sd = noiseOf(clean.filter(([t]) => t > 0).map(([, value]) => value))
+    return clean.map(([t, value]) => [t, value + sd * random.normal()] as const)
+  }
+  return {
+    ...test,
+    exhaust: test.exhaust ? shake(test.exhaust) : null,
+    points: Object.fromEntries(Object.entries(test.points).map(([name, samples]) => [name, shake(samples)])),
+  }
+}
+
+/** Sum of squared ln-differences from the base, for figures that exist in both. */
+function addDifference(
+  into: Map<string, number>,
+  base: Map<string, number>,
+  other: Map<string, number>,
+  weight: number,
+) {
+  for (const [name, value] of base) {
+    const changed = other.get(name) ?? Number.NaN
+    if (value > 0 && changed > 0)
+      into.set(name, (into.get(name) ?? 0) + weight * Math.log(changed / value) ** 2)
+  }
+}
+
+/** Noise: the spread of the figures when as much noise again is put on every sample. */
+function noiseVariances(test: TracerTest, base: Map<string, number>, noisy: boolean): Map<string, number> {
+  const variances = new Map<string, number>()
+  if (!noisy) return variances
+  const random = seededRandom(SEED)
+  for (let copy = 0; copy < COPIES; copy++) {
+    const figures = flatten(figuresOf(normaliseTest(noisyCopy(test, random))).figures)
+    addDifference(variances, base, figures, 1 / COPIES)
+  }
+  return variances
+}
+
+/** How much the tail's doubt is worth for one figure: its rate is wrong by the doubt of that record's tail. */
+function tailVariances(normalised: NormalisedTest, moments: FiguresAndMoments, base: Map<string, number>) {
+  const variances = new Map<string, number>()
+  const all = [moments.exhaust, ...Object.values(moments.points)]
+  const doubt = Math.max(0, ...all.map((one) => one?.tail?.rateDoubt ?? 0))
+  if (doubt === 0) return variances
+  const slower = flatten(figuresOf(normalised, 1 / (1 + doubt)).figures)
+  const faster = flatten(figuresOf(normalised, 1 + doubt).figures)
+  addDifference(variances, base, slower, 0.5)
+  addDifference(variances, base, faster, 0.5)
+  return variances
+}
+
+/** Every second sample left out: what the sampling step leaves open (a third of the difference for a second-order rule). */
+function thinned(test: TracerTest): TracerTest {
+  const half = (samples: readonly Sample[]) => {
+    const clean = tidy(samples)
+    const start = clean.findIndex(([t]) => t > 0)
+    return clean.filter((_, i) => i < start || (i - start) % 2 === 1 || i === clean.length - 1)
+  }
+  return {
+    ...test,
+    exhaust: test.exhaust ? half(test.exhaust) : null,
+    points: Object.fromEntries(Object.entries(test.points).map(([name, samples]) => [name, half(samples)])),
+  }
+}
+
+function stepVariances(
+  test: TracerTest,
+  moments: FiguresAndMoments,
+  base: Map<string, number>,
+  noisy: boolean,
+) {
+  const variances = new Map<string, number>()
+  // with noise the difference is mostly noise, which is counted already
+  if (!noisy) addDifference(variances, base, flatten(figuresOf(normaliseTest(thinned(test))).figures), 1 / 9)
+  const jump = (moments.exhaust?.jumpDoubt ?? 0) ** 2
+  for (const name of ['nominal', 'mean']) variances.set(name, (variances.get(name) ?? 0) + jump)
+  for (const [name, one] of Object.entries(moments.points)) {
+    variances.set(`age:${name}`, (variances.get(`age:${name}`) ?? 0) + one.jumpDoubt ** 2)
+    variances.set(`index:${name}`, (variances.get(`index:${name}`) ?? 0) + one.jumpDoubt ** 2 + jump)
+  }
+  return variances
+}
+
+/**
+ * Standard uncertainty of ln of every figure: noise (fresh noise on the record, everything fitted again), background, size of the step
+ * (uniform start or final level), tail, and sampling step, added in quadrature (GUM).
+ */
+export function standardUncertainties(
+  test: TracerTest,
+  normalised: NormalisedTest,
+  moments: FiguresAndMoments,
+): Map<string, number> {
+  const base = flatten(moments.figures)
+  const curves = [normalised.exhaust, ...Object.values(normalised.points)]
+  const noisy = curves.some((curve) => (curve?.noise ?? 0) > 1e-6)
+  const total = new Map<string, number>()
+  const include = (part: Map<string, number>) => {
+    for (const [name, value] of part) total.set(name, (total.get(name) ?? 0) + value)
+  }
+  include(noiseVariances(test, base, noisy))
+  include(tailVariances(normalised, moments, base))
+  include(stepVariances(test, moments, base, noisy))
+  const shifted = new Map<string, number>()
+  const backgroundShift = normalised.backgroundDoubt * Math.abs(normalised.step)
+  for (const sign of [-1, 1]) {
+    const background = normaliseTest(test, { backgroundShift: sign * backgroundShift })
+    addDifference(shifted, base, flatten(figuresOf(background).figures), 0.5)
+    const start = normaliseTest(test, { stepFactor: 1 + sign * normalised.stepDoubt })
+    addDifference(shifted, base, flatten(figuresOf(start).figures), 0.5)
+  }
+  include(shifted)
+  return new Map([...total].map(([name, variance]) => [name, Math.sqrt(variance)]))
+}
