@@ -1,10 +1,9 @@
-import { randomInt } from 'node:crypto'
 import { existsSync, readFileSync, renameSync, writeFileSync } from 'node:fs'
 import path from 'node:path'
 import type { Database } from '@/db/client'
 import { getDemoCredential } from '@/db/queries/people'
 import { DEMO_PEOPLE, seedDemoPeople } from '@/db/seed/people'
-import { hashPassword, passwordFits } from './password'
+import { hashPassword, newPassword, passwordFits } from './password'
 
 /** What `.data/demo-people.json` holds: the password that all people of the demo share, and who they are. */
 export type DemoPeople = { password: string; people: { email: string; name: string; roles: string[] }[] }
@@ -19,7 +18,7 @@ export async function ensureDemoPeople(
   place: { organizationId: number; buildingId: number; tenancyId: number },
 ): Promise<DemoPeople> {
   const file = path.join(dataDir, 'demo-people.json')
-  const password = knownPassword(file) ?? newDemoPassword()
+  const password = knownPassword(file) ?? newPassword()
   const first = DEMO_PEOPLE[0]?.email ?? ''
   const stored = await database.asSystem('demo people: look', (tx) => getDemoCredential(tx, { email: first }))
   const kept = stored?.passwordHash && (await passwordFits(stored.passwordHash, password))
@@ -36,12 +35,4 @@ function knownPassword(file: string): string | undefined {
   if (!existsSync(file)) return undefined
   const { password } = JSON.parse(readFileSync(file, 'utf8')) as Partial<DemoPeople>
   return password
-}
-
-const letters = 'abcdefghjkmnpqrstuvwxyz23456789'
-
-/** A password that can be read aloud: words of the tide and ten random signs (49 bits). */
-function newDemoPassword(): string {
-  const signs = Array.from({ length: 10 }, () => letters[randomInt(letters.length)]).join('')
-  return `ebb-and-flow-${signs.slice(0, 5)}-${signs.slice(5)}`
 }

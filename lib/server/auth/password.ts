@@ -1,4 +1,4 @@
-import { randomBytes } from 'node:crypto'
+import { randomBytes, randomInt } from 'node:crypto'
 import { hash, verify } from '@node-rs/argon2'
 
 /**
@@ -26,4 +26,12 @@ export async function passwordFits(
   const against = storedHash ?? (await nobody)
   const fits = await verify(against, password)
   return fits && typeof storedHash === 'string'
+}
+
+const letters = 'abcdefghjkmnpqrstuvwxyz23456789'
+
+/** A password that can be read aloud: words of the tide and ten random signs (49 bits). */
+export function newPassword(): string {
+  const signs = Array.from({ length: 10 }, () => letters[randomInt(letters.length)]).join('')
+  return `ebb-and-flow-${signs.slice(0, 5)}-${signs.slice(5)}`
 }
