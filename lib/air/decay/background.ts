@@ -108,11 +108,9 @@ export function estimateBackground(inputs: BackgroundInputs): Background {
   // the room's own sensor is right about its own zero: others count only where it has not spoken
   if (estimates.length === 0) estimates.push(elsewhere)
   const best = combine(estimates)
-  const lowest = inputs.lowest ? moved(inputs.lowest) : Number.POSITIVE_INFINITY
-  return notAbove(
-    best,
-    lowest + wander(inputs.lowest ? inputs.lowest.atS - inputs.atS : 0, outdoorNow !== null),
-  )
+  // a level at rest near the hour wanted says more than a lower one many hours away
+  if (best.origin === 'own record' || !inputs.lowest) return best
+  return notAbove(best, moved(inputs.lowest) + BACKGROUND.wanderPpm)
 }
 
 /** Mean and spread of a normal variable that is kept below a limit (truncated normal, by its first two moments). */
