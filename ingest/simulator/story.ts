@@ -57,20 +57,27 @@ function mondayBefore(day: number): number {
 
 /** The stories in force as records for the truth file. */
 export function storyRecords(story: Story): Record<string, unknown>[] {
-  const iso = (s: number) => new Date(s * 1000).toISOString()
+  const iso = (s: number) => new Date(s * 1000).toISOString().replace('.000Z', 'Z')
+  const { halfSupply, earlyStop, driftingSensor, silentSensor, smallRoom, openDoor } = story
   const all: Record<StoryKey, Record<string, unknown>> = {
-    halfSupply: {
-      room: story.halfSupply.room,
-      factor: story.halfSupply.factor,
-      from: iso(story.halfSupply.fromS),
+    halfSupply: { room: halfSupply.room, factor: halfSupply.factor, from: iso(halfSupply.fromS) },
+    earlyStop: {
+      air_handler: earlyStop.airHandler,
+      stops_at: earlyStop.stopsAt,
+      documented: earlyStop.documented,
+      from_date: dateOf(earlyStop.fromDay),
     },
-    earlyStop: { ...story.earlyStop, fromDay: undefined, from_date: dateOf(story.earlyStop.fromDay) },
-    driftingSensor: { ...story.driftingSensor, fromS: undefined, from: iso(story.driftingSensor.fromS) },
-    silentSensor: { deviceId: story.silentSensor.deviceId, from: iso(story.silentSensor.fromS) },
-    nightVentilation: { ...story.nightVentilation },
-    smallRoom: { ...story.smallRoom },
-    openDoor: { ...story.openDoor },
-    cleaners: { ...story.cleaners },
+    driftingSensor: {
+      sensor: driftingSensor.deviceId,
+      from: iso(driftingSensor.fromS),
+      ppm_per_day: driftingSensor.ppmPerDay,
+      at_most_ppm: driftingSensor.atMostPpm,
+    },
+    silentSensor: { sensor: silentSensor.deviceId, from: iso(silentSensor.fromS) },
+    nightVentilation: { air_handler: story.nightVentilation.airHandler },
+    smallRoom: { room: smallRoom.room, persons_from: smallRoom.from, persons_to: smallRoom.to },
+    openDoor: { room: openDoor.room, exchange_m3_per_h: openDoor.exchangeM3PerHour },
+    cleaners: { from_about: story.cleaners.from },
   }
   return STORY_KEYS.filter((key) => story.switches[key]).map((key) => ({ kind: key, ...all[key] }))
 }
