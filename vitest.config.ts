@@ -37,7 +37,7 @@ export default defineConfig({
         test: {
           name: 'browser',
           include: ['tests/browser/**/*.test.ts'],
-          globalSetup: ['tests/support/global-setup.ts'],
+          globalSetup: ['tests/support/global-setup.ts', 'tests/support/stack.ts'],
           pool: 'forks',
           fileParallelism: false,
           testTimeout: 120_000,
