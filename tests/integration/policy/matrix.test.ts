@@ -166,7 +166,7 @@ describe('actions', () => {
     const action = find('(signed-in)/person-actions.ts#signOutEverywhere')
     const { status } = await post('operator', action, { Origin: 'https://elsewhere.example' })
     expect(status).toBe(500)
-    expect((await call('operator', '/rounds')).status).toBe(200)
+    expect((await call('operator', '/sensors')).status).toBe(200)
   })
 
   test('sign out here ends one session, everywhere ends every one and writes it down', async () => {
@@ -174,9 +174,9 @@ describe('actions', () => {
     const enter = async () => (await signInOverHttp(web, { email, password: SMALL_PASSWORD })).jar.header
     const [first, second, third] = [await enter(), await enter(), await enter()]
     const inside = async (cookie: string) =>
-      (await fetch(`${web.url}/rounds`, { headers: { Cookie: cookie }, redirect: 'manual' })).status === 200
+      (await fetch(`${web.url}/sensors`, { headers: { Cookie: cookie }, redirect: 'manual' })).status === 200
     const leave = (cookie: string, name: string) =>
-      fetch(`${web.url}/rounds`, {
+      fetch(`${web.url}/sensors`, {
         method: 'POST',
         redirect: 'manual',
         headers: { Cookie: cookie, 'Next-Action': find(`(signed-in)/person-actions.ts#${name}`).id },
