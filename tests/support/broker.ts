@@ -33,7 +33,7 @@ export async function startBroker(options: {
       DATABASE_URL: options.appUrl,
       MQTT_PORT: String(port),
       ...options.env,
-    } as NodeJS.ProcessEnv,
+    },
     stdio: ['ignore', 'pipe', 'pipe', 'ipc'],
   })
   let output = ''

@@ -87,7 +87,7 @@ describe('a connect', () => {
   it('of a retired sensor is refused, and an open connection of one ends on the notice', async () => {
     const s = await sensor()
     const client = await connectSensor(broker.port, s)
-    const closed = new Promise((resolve) => client.once('close', resolve))
+    const closed = new Promise<void>((resolve) => client.once('close', () => resolve()))
     await rows(db.database, 'UPDATE sensors SET retired_at = now() WHERE id = $1', [s.id])
     await notifySensors()
     await closed
