@@ -37,7 +37,7 @@ export default async function setup(project: TestProject): Promise<() => Promise
     EBBMARK_DEMO: '1',
     MQTT_PORT: String(mqttPort),
     SMTP_PORT: String(smtpPort),
-    NODE_ENV: 'production',
+    NODE_ENV: 'production' as const,
     LOG_LEVEL: 'warn',
   }
   await finished(run('ingest/setup/main.ts', env), 'the set-up')
@@ -64,10 +64,10 @@ export default async function setup(project: TestProject): Promise<() => Promise
   }
 }
 
-function run(main: string, env: Record<string, string>): ChildProcess {
+function run(main: string, env: Record<string, string> & { NODE_ENV: 'production' }): ChildProcess {
   const child = spawn(process.execPath, ['--import', 'tsx', main], {
     cwd: root,
-    env: { PATH: process.env.PATH, HOME: process.env.HOME, ...env },
+    env: { ...process.env, ...env },
     stdio: ['ignore', 'pipe', 'pipe', 'ipc'],
   })
   const said: string[] = []
