@@ -5,6 +5,7 @@ export const paths = {
   home: () => '/',
   signIn: (next?: string) => (next ? `/sign-in?next=${encodeURIComponent(next)}` : '/sign-in'),
   rounds: () => '/rounds',
+  wall: () => '/rounds/wall',
   rooms: () => '/rooms',
   room: (room: string) => `/rooms/${part(room)}`,
   airChange: () => '/air-change',

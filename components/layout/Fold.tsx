@@ -4,20 +4,27 @@ import { usePathname } from 'next/navigation'
 import { type ReactNode, useEffect, useRef } from 'react'
 
 /** A panel behind a word. It is a details element, so it opens without JavaScript; with it, Escape, a click outside and a new page close it. */
-export function Fold({ word, children, className }: { word: ReactNode; children: ReactNode; className?: string }) {
+export function Fold({
+  word,
+  children,
+  className,
+}: {
+  word: ReactNode
+  children: ReactNode
+  className?: string
+}) {
   const fold = useRef<HTMLDetailsElement>(null)
   const pathname = usePathname()
-  // biome-ignore lint/correctness/useExhaustiveDependencies: closes when the page changes
   useEffect(() => fold.current?.removeAttribute('open'), [pathname])
   useEffect(() => {
     const close = (event: Event) => {
       const open = fold.current?.open
       if (!open) return
-      const escape = event instanceof KeyboardEvent && event.key === 'Escape'
+      const byEscape = event instanceof KeyboardEvent && event.key === 'Escape'
       const outside = event instanceof PointerEvent && !fold.current?.contains(event.target as Node)
-      if (!escape && !outside) return
+      if (!byEscape && !outside) return
       fold.current?.removeAttribute('open')
-      if (escape) fold.current?.querySelector('summary')?.focus()
+      if (byEscape) fold.current?.querySelector('summary')?.focus()
     }
     document.addEventListener('keydown', close)
     document.addEventListener('pointerdown', close)

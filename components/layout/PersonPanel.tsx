@@ -30,6 +30,7 @@ export function PersonPanel(props: PersonPanelProps) {
           <p className="font-[600]">Building</p>
           {props.buildings.map((building) => (
             <button
+              type="submit"
               key={building.slug}
               name="building"
               value={building.slug}

@@ -23,7 +23,10 @@ export function ThemeSwitch({ theme }: { theme: Theme | null }) {
     <fieldset className="text-2">
       <legend className="pb-1 font-[600]">Light or dark</legend>
       {(['system', ...THEMES] as const).map((choice) => (
-        <label key={choice} className="flex min-h-[32px] cursor-pointer items-center gap-[10px] max-sm:min-h-[44px]">
+        <label
+          key={choice}
+          className="flex min-h-[32px] cursor-pointer items-center gap-[10px] max-sm:min-h-[44px]"
+        >
           <input
             type="radio"
             name="theme"

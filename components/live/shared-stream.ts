@@ -5,7 +5,7 @@ type Listener = { onMessage: (message: LiveMessage) => void; onState: (state: Li
 
 /**
  * One stream a browser: the tabs of an address elect a leader by a lock; the leader holds the event source and passes on what it hears.
- * When the leader's tab closes, the lock goes to the next, which reads the snapshot again.
+ * When the leader's tab closes, the lock goes to the next, whose new stream begins with the whole board.
  */
 class SharedStream {
   private readonly listeners = new Set<Listener>()
@@ -69,7 +69,6 @@ class SharedStream {
 
   /** Opens the event source and passes on to the other tabs what it says. */
   private lead(): () => void {
-    this.tell({ event: 'reload', data: {} })
     return openStream(this.url, {
       onMessage: (message) => {
         this.channel?.postMessage({ message } satisfies Posted)

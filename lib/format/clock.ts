@@ -12,7 +12,9 @@ export function zonedStamp(timeS: number, timeZone: string): { day: string; cloc
 
 /** The zone's short English name at this instant (GMT, BST, CET, EST, GMT+5:30). */
 export function zoneName(timeS: number, timeZone: string): string {
-  const parts = new Intl.DateTimeFormat('en-GB', { timeZone, timeZoneName: 'short' }).formatToParts(timeS * 1000)
+  const parts = new Intl.DateTimeFormat('en-GB', { timeZone, timeZoneName: 'short' }).formatToParts(
+    timeS * 1000,
+  )
   return parts.find((part) => part.type === 'timeZoneName')?.value ?? timeZone
 }
 
@@ -20,7 +22,8 @@ export function zoneName(timeS: number, timeZone: string): string {
 export function dayAndClock(timeS: number, nowS: number, timeZone: string): string {
   const { day, clock } = zonedStamp(timeS, timeZone)
   if (day === zonedStamp(nowS, timeZone).day && Math.abs(nowS - timeS) < 86_400) return clock
-  if (day === zonedStamp(nowS - 86_400, timeZone).day && nowS - timeS < 2 * 86_400) return `yesterday ${clock}`
+  if (day === zonedStamp(nowS - 86_400, timeZone).day && nowS - timeS < 2 * 86_400)
+    return `yesterday ${clock}`
   return `${day} ${clock}`
 }
 
