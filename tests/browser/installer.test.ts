@@ -16,8 +16,8 @@ beforeAll(async () => {
 })
 afterAll(() => browser.close())
 
-const valueOf = (page: Page, label: string) =>
-  page.getByText(label, { exact: true }).locator('xpath=following-sibling::p').innerText()
+const shownValue = (page: Page, label: string) =>
+  page.getByText(label, { exact: true }).locator('xpath=following-sibling::p').textContent()
 
 describe('the installer on a phone', () => {
   it('registers a sensor, is shown its secret once, and sees its first reading arrive', async () => {
@@ -34,8 +34,8 @@ describe('the installer on a phone', () => {
     await page.getByText('shown this once').waitFor()
     await keepPicture(page, 'register-listen-phone')
     await expectNoSidewaysScroll(page)
-    const secret = await valueOf(page, 'Secret (MQTT password)')
-    const topic = await valueOf(page, 'Topic, QoS 1')
+    const secret = (await shownValue(page, 'Secret (MQTT password)')) ?? ''
+    const topic = (await shownValue(page, 'Topic, QoS 1')) ?? ''
     expect(topic).toMatch(/^ebbmark\/v1\/[a-z-]+\/EM-TEST-1\/readings$/)
     const client = await mqtt.connectAsync(`mqtt://127.0.0.1:${inject('stack').mqttPort}`, {
       clientId: 'EM-TEST-1',
@@ -67,9 +67,9 @@ describe('the installer on a phone', () => {
     const { page, context } = await openPage(browser)
     await signIn(page, 'installer')
     await page.goto('/sensors')
-    const taken = await page.locator('tbody td:nth-child(2)').first().innerText()
+    const taken = await page.locator('tbody td:nth-child(2)').first().textContent()
     await page.goto('/sensors/register')
-    await page.getByLabel('Code on the sensor').fill(taken.toLowerCase())
+    await page.getByLabel('Code on the sensor').fill(taken?.toLowerCase() ?? '')
     await page.getByLabel('Room', { exact: true }).last().selectOption({ index: 1 })
     await page.getByLabel('Where exactly').fill('wall')
     await page.getByRole('button', { name: 'Save and listen' }).click()
