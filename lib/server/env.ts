@@ -78,10 +78,12 @@ export function tellNextAuthItsAddress(): void {
   process.env.NEXTAUTH_URL = publicUrl()
 }
 
-/** Are the demo's sign-ins offered? Only in the demo, and only where none but this machine can reach them. */
+const loopback = ['127.0.0.1', '::1', '[::1]', 'localhost']
+
+/** Are the demo's sign-ins offered? Only in the demo, and only where none but this machine can reach it, also not through a proxy. */
 export function offersDemoSignIn(): boolean {
   const { EBBMARK_DEMO, HOST } = env()
-  return EBBMARK_DEMO && ['127.0.0.1', '::1', 'localhost'].includes(HOST)
+  return EBBMARK_DEMO && loopback.includes(HOST) && loopback.includes(new URL(publicUrl()).hostname)
 }
 
 /** Where sensors publish to, as an installer types it in. */

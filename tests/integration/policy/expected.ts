@@ -12,12 +12,14 @@ const rooms: Holders = ['administrator', 'operator', 'engineer', 'tenant']
 const rates: Holders = ['administrator', 'engineer']
 const sensors: Holders = ['administrator', 'operator', 'engineer', 'installer']
 const registering: Holders = ['administrator', 'installer']
+const reviewing: Holders = ['engineer']
 const digests: Holders = ['administrator', 'operator', 'tenant']
 
 export const EXPECTED_PAGES: Record<string, Holders> = {
   '/': 'open',
   '/sign-in': 'open',
   '/rounds': rounds,
+  '/rounds/wall': rounds,
   '/rooms': rooms,
   '/rooms/[room]': rooms,
   '/air-change': rates,
@@ -52,6 +54,7 @@ export const EXPECTED_ACTIONS: Record<string, { holders: Holders; answers: boole
   '(signed-in)/person-actions.ts#signOutHere': { holders: everyone, answers: false },
   '(signed-in)/person-actions.ts#signOutEverywhere': { holders: everyone, answers: false },
   '(signed-in)/person-actions.ts#chooseBuilding': { holders: everyone, answers: false },
+  '(signed-in)/decays/actions.ts#reviewDecayAction': { holders: reviewing, answers: true },
   '(signed-in)/sensors/actions.ts#registerSensorAction': { holders: registering, answers: true },
   '(signed-in)/sensors/actions.ts#renewSecretAction': { holders: registering, answers: true },
   '(signed-in)/sensors/actions.ts#retireSensorAction': { holders: registering, answers: true },
