@@ -10,9 +10,11 @@ import {
   placements,
   roomDesigns,
   rooms,
+  roomTenancies,
   sensorOffsets,
   sensors,
   supplyStates,
+  tenancies,
 } from '../schema'
 
 export type BuildingPlan = Awaited<ReturnType<typeof loadPlan>>
@@ -59,6 +61,16 @@ async function loadPlan(tx: Tx, building: typeof buildings.$inferSelect) {
       .from(closures)
       .where(eq(closures.buildingId, here.buildingId))
       .orderBy(closures.id),
+    tenancies: await tx
+      .select()
+      .from(tenancies)
+      .where(eq(tenancies.buildingId, here.buildingId))
+      .orderBy(tenancies.id),
+    roomTenancies: await tx
+      .select()
+      .from(roomTenancies)
+      .where(inArray(roomTenancies.roomId, roomIds))
+      .orderBy(roomTenancies.id),
     placements: placementRows,
     sensors: await tx.select().from(sensors).where(inArray(sensors.id, sensorIds)).orderBy(sensors.id),
     offsets: await tx

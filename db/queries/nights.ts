@@ -4,11 +4,27 @@ import type { SupplyStop } from '@/lib/air/decay/modes'
 import type { Tx } from '../client'
 import { decays, lateReadings, nightRuns, placements, readings } from '../schema'
 
-/** What one night leaves for later ones and for the findings; keys are sensor ids and air handler ids. */
+/** What one room's air was like on one local day, from its lead sensor: levels in ppm, times in minutes. */
+export type DayFacts = {
+  outdoorPpm: number
+  /** the limit as a level: outdoor air already added to it */
+  limitPpm: number
+  /** the fullest quarter of an hour; null where no quarter was half covered by readings */
+  peakPpm: number | null
+  peakAtS: number | null
+  /** minutes in occupied hours that the 15 min mean stood above the limit */
+  overMin: number
+  /** minutes of the day's occupied hours, and how many of them readings cover */
+  occupiedMin: number
+  coveredMin: number
+}
+
+/** What one night leaves for later ones, for findings and digests; keys are sensor ids, air handler ids and room ids. */
 export type Carried = {
   quietFloors?: Record<string, QuietFloor>
   /** with the wall clock of each stop, seconds after local midnight */
   supplyStops?: Record<string, (SupplyStop & { clockS: number })[]>
+  days?: Record<string, DayFacts>
   notes?: { roomId: number; sensorId: number; code: string; text: string; atS?: number }[]
 }
 

@@ -6,6 +6,7 @@ import { sliceSeries } from '@/db/queries/series'
 import type { BuildingDay, BuildingRoom, RoomHistory } from '@/lib/air/analyse-building'
 import type { Series, SupplyChange } from '@/lib/air/types'
 import { addDays } from '@/lib/time'
+import { occupiedPeriods, type Period } from './occupied'
 import { withOffsets } from './offsets'
 import { roomSpecOf } from './rooms'
 import type { NightWindow } from './window'
@@ -21,7 +22,15 @@ export type SupplyRow = {
 }
 
 /** One room's sensor among the inputs, and where its decays are to be stored; a corridor's are not. */
-export type AnalysedSensor = { roomId: number; sensorId: number; lead: boolean; stores: boolean }
+export type AnalysedSensor = {
+  roomId: number
+  sensorId: number
+  lead: boolean
+  stores: boolean
+  intervalS: number
+  limit: { kind: 'above outdoor' | 'absolute'; ppm: number }
+  occupied: Period[]
+}
 
 export type NightInputs = { day: BuildingDay; sensors: AnalysedSensor[]; inputHash: string }
 
@@ -85,7 +94,7 @@ function outdoorSeries(material: NightMaterial): Series | undefined {
 }
 
 /** Order matters for the hash and for nothing else: lists come from the plan in order of id. */
-function hashOf(methodVersion: string, day: BuildingDay): string {
+function hashOf(methodVersion: string, day: BuildingDay, sensors: readonly AnalysedSensor[]): string {
   const hash = createHash('sha256')
   const addSeries = (series: Series | undefined) => {
     hash.update(`${series?.timeS.length ?? 'none'};`)
@@ -94,7 +103,7 @@ function hashOf(methodVersion: string, day: BuildingDay): string {
       hash.update(new Uint8Array(part.buffer, part.byteOffset, part.byteLength))
   }
   const { rooms, outdoor, ...rest } = day
-  hash.update(canonicalJson({ methodVersion, ...rest }))
+  hash.update(canonicalJson({ methodVersion, sensors, ...rest }))
   for (const { series, ...room } of rooms) {
     hash.update(canonicalJson(room))
     addSeries(series)
@@ -126,6 +135,9 @@ export function nightInputs(material: NightMaterial): NightInputs {
       sensorId: placement.sensorId,
       lead: placement.lead,
       stores: room.kind === 'room',
+      intervalS: plan.sensors.find((sensor) => sensor.id === placement.sensorId)?.intervalS ?? 60,
+      limit: { kind: room.limitKind, ppm: room.limitPpm },
+      occupied: occupiedPeriods(plan, room.id, window.date, window.dayStartS),
     })
   }
   const outdoor = outdoorSeries(material)
@@ -141,5 +153,5 @@ export function nightInputs(material: NightMaterial): NightInputs {
       standardUncertaintyPpm: plan.building.outdoorDefaultUncertaintyPpm,
     },
   }
-  return { day, sensors, inputHash: hashOf(methodVersion, day) }
+  return { day, sensors, inputHash: hashOf(methodVersion, day, sensors) }
 }

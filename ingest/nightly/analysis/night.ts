@@ -1,7 +1,9 @@
 import type { FoundDecay, NightResult } from '@/db/changes/nights'
 import type { Carried } from '@/db/queries/nights'
-import { analyseBuildingDay, type RoomDay } from '@/lib/air/analyse-building'
+import { analyseBuildingDay, type BuildingDay, type RoomDay } from '@/lib/air/analyse-building'
+import { DEFAULT_OUTDOOR } from '@/lib/air/constants'
 import { localClock } from '@/lib/time'
+import { dayFacts, outdoorLevelOf } from './day-facts'
 import { type AnalysedSensor, type NightMaterial, nightInputs } from './inputs'
 
 export type AnalysedNight = Pick<NightResult, 'inputHash' | 'found' | 'carried' | 'roomsAnalysed'>
@@ -13,7 +15,22 @@ const clockSeconds = (epochS: number, timeZone: string) => {
   return hours * 3600 + minutes * 60 + (epochS % 60)
 }
 
-function carriedOf(pairs: readonly Pair[], { plan }: NightMaterial): Carried {
+function daysOf(day: BuildingDay, sensors: readonly AnalysedSensor[]): NonNullable<Carried['days']> {
+  const { dayStartS, dayEndS } = day
+  const outdoorPpm = outdoorLevelOf(day.outdoor, day.defaultOutdoor?.ppm ?? DEFAULT_OUTDOOR.ppm)
+  const days: NonNullable<Carried['days']> = {}
+  sensors.forEach((sensor, i) => {
+    if (!sensor.lead || !sensor.stores) return
+    const { series } = day.rooms[i] as BuildingDay['rooms'][number]
+    days[sensor.roomId] = dayFacts({ ...sensor, series, dayStartS, dayEndS, outdoorPpm })
+  })
+  return days
+}
+
+function carriedOf(
+  pairs: readonly Pair[],
+  { plan }: NightMaterial,
+): Pick<Carried, 'quietFloors' | 'supplyStops' | 'notes'> {
   const { timeZone } = plan.building
   const quietFloors: NonNullable<Carried['quietFloors']> = {}
   const supplyStops: NonNullable<Carried['supplyStops']> = {}
@@ -31,7 +48,7 @@ function carriedOf(pairs: readonly Pair[], { plan }: NightMaterial): Carried {
   return { quietFloors, supplyStops, notes }
 }
 
-/** The inputs' hash, without the analysis: enough to tell that a night has nothing new. */
+/** Analyses one night, or gives only the inputs' hash where it is the known one: nothing new to be found. */
 export function analyseNight(
   material: NightMaterial,
   knownHash: string | null,
@@ -53,5 +70,10 @@ export function analyseNight(
       })),
     )
   const rooms = new Set(sensors.filter((sensor) => sensor.stores).map((sensor) => sensor.roomId))
-  return { inputHash, found, carried: carriedOf(pairs, material), roomsAnalysed: rooms.size }
+  return {
+    inputHash,
+    found,
+    carried: { ...carriedOf(pairs, material), days: daysOf(day, sensors) },
+    roomsAnalysed: rooms.size,
+  }
 }
