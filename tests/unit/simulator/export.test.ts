@@ -1,9 +1,9 @@
-import { spawnSync } from 'node:child_process'
 import fs from 'node:fs'
 import os from 'node:os'
 import path from 'node:path'
 import { afterAll, beforeAll, describe, expect, it } from 'vitest'
 import { exportDemo } from '@/ingest/simulator/export-files'
+import { askedOf } from '@/ingest/simulator/export-options'
 import { sallowMill } from '@/ingest/simulator/scenario'
 import { makeWorld } from '@/ingest/simulator/world'
 
@@ -46,20 +46,29 @@ describe('export', () => {
     expect(JSON.parse(read('truth.json')).rooms).toHaveLength(27)
   })
 
-  it('answers a wrong command with what was expected, and exit code 2', () => {
-    const run = (...args: string[]) =>
-      spawnSync(process.execPath, ['--import', 'tsx', 'ingest/simulator/export.ts', ...args], {
-        encoding: 'utf8',
-      })
-    const bad = run('--out', dir, '--without', 'halfSuply')
-    expect(bad.status).toBe(2)
-    expect(bad.stderr).toMatch(/--without halfSuply: expected some of halfSupply/)
-    const lacking = run('--weeks', '2')
-    expect([lacking.status, lacking.stderr.split('\n')[0]]).toEqual([
-      2,
-      '--out is missing: name the folder to write to',
-    ])
-    const local = run('--out', dir, '--until', '2026-12-01T10:00')
-    expect(local.stderr).toMatch(/--until 2026-12-01T10:00: expected ISO 8601 with offset or Z/)
+  it('reads its options, with the demo that stands as default', () => {
+    const birth = { seed: 4, firstStart: '2026-11-02T09:30:00.000Z' }
+    const firstStartS = Date.parse(birth.firstStart) / 1000
+    const now = Date.parse('2026-12-01T14:05:00Z')
+    expect(askedOf(['--out', dir], birth, now)).toMatchObject({ seed: 4, firstStartS, untilS: firstStartS })
+    const fresh = askedOf(['--out', dir, '--weeks', '2', '--without', 'cleaners,openDoor'], undefined, now)
+    expect(fresh).toMatchObject({
+      untilS: Date.parse('2026-12-01T00:00:00Z') / 1000,
+      historyS: 14 * 86400,
+      stories: { cleaners: false, openDoor: false },
+    })
+  })
+
+  it('answers a wrong command with what was expected', () => {
+    const asked =
+      (...args: string[]) =>
+      () =>
+        askedOf(args, undefined, Date.parse('2026-12-01T14:05:00Z'))
+    expect(asked('--weeks', '2')).toThrow('--out is missing: name the folder to write to')
+    expect(asked('--out', dir, '--without', 'halfSuply')).toThrow(/halfSuply: expected some of halfSupply/)
+    expect(asked('--out', dir, '--until', '2026-12-01T10:00')).toThrow(/expected ISO 8601 with offset or Z/)
+    expect(asked('--out', dir, '--until', '2025-12-01T10:00Z')).toThrow(/before the first reading/)
+    expect(asked('--out', dir, '--weeks', '0')).toThrow(/--weeks 0: expected a whole number from 1 to 52/)
+    expect(asked('--out', dir, '--nope')).toThrow(/nope/)
   })
 })
