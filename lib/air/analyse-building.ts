@@ -10,7 +10,8 @@ import { lowestLevel, type QuietFloor, restingLevels } from './decay/floor'
 import { modeOf, type RateDrop, type SupplyStop, sharedStops } from './decay/modes'
 import { decayOf, refusedDecay } from './decay/outcome'
 import { peopleProbability, rateEvidence, shapeEvidence } from './decay/people'
-import { type FallReading, type Reading, readFall } from './decay/read-fall'
+import { type FallReading, readFall } from './decay/read-fall'
+import type { Reading } from './decay/run'
 import type { Background, Decay, RoomSpec, Series, SupplyChange } from './types'
 
 /** What earlier nights left behind for a room. */
@@ -96,9 +97,10 @@ function prepare(
   const track = levelTrack(record, fromS, toS)
   const all = findFalls(track)
   const lowest = lowestLevel(track, fromS, toS, day.date)
-  const own = restingLevels(track, all, lowest, day.date)
-  if (lowest?.reached && own.length === 0) own.push(lowest)
   const history = (input.history?.quietFloors ?? []).filter((entry) => entry.date !== day.date)
+  const own = restingLevels(track, all, lowest, day.date, history)
+  const nightsLow = Math.min(...history.map((entry) => entry.ppm))
+  if (lowest?.reached && own.length === 0 && lowest.ppm < nightsLow + 60) own.push(lowest)
   const falls = all
     .filter((fall) => fall.toS > day.dayStartS && fall.fromS < day.dayEndS)
     .map((fall) => {

@@ -60,7 +60,7 @@ export const BACKGROUND = {
   wanderFollowedPpm: 8,
   wanderS: 6 * 3600,
   otherNightPpm: 12,
-  driftPpmPerHour: 2.5,
+  driftPpmPerHour: 5,
   sensorOffsetPpm: 18,
   leastPpm: 5,
 } as const

@@ -22,7 +22,7 @@ export const UNUSUAL_PPM = 5000
 
 const TREND_PPM_PER_MIN = 1.7
 const TREND_SPAN_S = 900
-const FORECAST_MIN = 90
+const FORECAST_MIN = 60
 const EBB_SPAN_S = 3 * 3600
 
 export type RoomStateInput = {
@@ -49,7 +49,7 @@ export type RoomLive = {
   /** since when the 15 min mean has stood above the limit */
   overSinceS: number | null
   overTodayMin: number
-  /** minutes until the level reaches the limit at the present slope; null when it does not within 90 min */
+  /** minutes until the level reaches the limit at the present slope; null when it does not within the hour */
   limitInMin: number | null
   /** when the fall after people left began */
   emptySinceS: number | null

@@ -10,7 +10,7 @@ const LEAST_FLOOR = 0.02
  */
 export function levelsOff(curve: Curve, backgroundDoubt: number): boolean {
   const samples = curve.timeS.map((t, i) => [t, curve.share[i]!] as const)
-  const fit = fitSteady(samples)
+  const fit = fitSteady([samples])
   const last = curve.share.at(-1)!
   if (!fit || last > 0.4) return false
   // only a record that is nearly at its floor can show it: slow second modes look like one from afar

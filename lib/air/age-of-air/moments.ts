@@ -97,7 +97,17 @@ function fitExponential(timeS: readonly number[], share: readonly number[], orig
     level += (bb * ga - ab * gb) / det
     rate += (aa * gb - ab * ga) / det
   }
-  return Number.isFinite(rate) && rate > 0 && level > 0 ? { rate, level } : null
+  if (!(Number.isFinite(rate) && rate > 0 && level > 0)) return null
+  let [aa, ab, bb] = [0, 0, 0]
+  for (const timeAt of timeS) {
+    const t = timeAt - originS
+    const e = Math.exp(-rate * t)
+    aa += e * e
+    ab -= e * level * t * e
+    bb += (level * t * e) ** 2
+  }
+  // standard error of the rate per unit of noise
+  return { rate, level, rateGain: Math.sqrt(aa / Math.max(aa * bb - ab * ab, 1e-300)) }
 }
 
 /** Least samples in the tail's fit, and how many e-foldings before the end it reaches back. */
@@ -126,18 +136,25 @@ function fitTail(curve: Curve, last: number, floor: number): Tail | null {
     if (last - first + 1 >= TAIL_LEAST && first < 0.5 * last) break
   }
   const fromS = timeS[last]!
-  const fit = fitExponential(timeS.slice(first, last + 1), share.slice(first, last + 1), fromS)
-  if (!fit) return null
-  const middle = Math.floor((first + last + 1) / 2)
-  const early = fitExponential(timeS.slice(first, middle + 1), share.slice(first, middle + 1), fromS)
-  const late = fitExponential(timeS.slice(middle, last + 1), share.slice(middle, last + 1), fromS)
-  const bend = early && late ? Math.abs(early.rate - late.rate) / fit.rate : 0.5
-  return {
-    fromS,
-    share: fit.level,
-    ratePerS: fit.rate,
-    rateDoubt: Math.min(0.5, Math.max(LEAST_RATE_DOUBT, bend)),
+  const fitPart = (from: number, to: number) =>
+    fitExponential(timeS.slice(from, to + 1), share.slice(from, to + 1), fromS)
+  const whole = fitPart(first, last)
+  let fit = whole
+  // as long as the two halves fall at rates that differ by more than noise, only the later half speaks for the tail
+  while (fit && last - first + 1 >= 2 * TAIL_LEAST) {
+    const middle = Math.floor((first + last + 1) / 2)
+    const early = fitPart(first, middle)
+    const late = fitPart(middle, last)
+    if (!late || !early) break
+    const noise = curve.noise * Math.hypot(early.rateGain, late.rateGain)
+    if (Math.abs(early.rate - late.rate) <= Math.max(3 * noise, 0.01 * late.rate)) break
+    first = middle
+    fit = late
   }
+  if (!fit || !whole) return null
+  const bend = Math.abs(whole.rate - fit.rate) / (2 * fit.rate)
+  const rateDoubt = Math.min(0.5, Math.max(LEAST_RATE_DOUBT, bend))
+  return { fromS, share: fit.level, ratePerS: fit.rate, rateDoubt }
 }
 
 /**

@@ -1,5 +1,5 @@
 import { type Curve, curveOf, noiseOf, tidy } from './curve'
-import { fitSteady, type Steady } from './steady'
+import { fitSteady } from './steady'
 import type { Sample, TracerTest, TracerWarning } from './types'
 
 /** A test brought to shares of old air, ready for the moments. */
@@ -68,20 +68,15 @@ function steadyLevel(
   warnings: Set<TracerWarning>,
 ): Level {
   if (test.steady !== undefined) return { value: test.steady, standardUncertainty: 0 }
-  // the exhaust alone decides where there is one: points may hang behind in a dead zone
-  const fits = (test.exhaust ? records.slice(0, 1) : records).map((samples) => fitSteady(samples))
-  const found = fits.filter((fit): fit is Steady => fit !== null)
-  if (found.length === 0) {
+  const fit = fitSteady(records)
+  if (!fit) {
     warnings.add('steady-not-reached')
     const last = records[0]?.at(-1)
     if (!last) throw new RangeError('a tracer test needs at least one sample')
     return { value: last[1], standardUncertainty: 0 }
   }
-  if (found.some((fit) => fit.reachedShare < 0.9)) warnings.add('steady-not-reached')
-  return {
-    value: meanOf(found.map((fit) => fit.level)),
-    standardUncertainty: meanOf(found.map((fit) => fit.standardUncertainty)) / Math.sqrt(found.length),
-  }
+  if (fit.reachedShare < 0.9) warnings.add('steady-not-reached')
+  return { value: fit.level, standardUncertainty: fit.standardUncertainty }
 }
 
 function backgroundUncertainty(

@@ -4,8 +4,8 @@ import { type FiguresAndMoments, figuresOf, flatten } from './figures'
 import { type NormalisedTest, normaliseTest } from './normalise'
 import type { Sample, TracerTest } from './types'
 
-/** Copies of the test with fresh noise; enough for a standard uncertainty to within 6 %. */
-const COPIES = 120
+/** Copies of the test with fresh noise; enough for a standard uncertainty to within 9 %. */
+const COPIES = 60
 const SEED = 20260301
 
 function noisyCopy(test: TracerTest, random: ReturnType<typeof seededRandom>): TracerTest {

@@ -47,7 +47,7 @@ export function levelTrack(record: CleanRecord, fromS: number, toS: number): Tra
   }
 }
 
-/** Every fall of at least the noise's prominence. A fall starts where the level last stood near its peak, at most a quarter of an hour before. */
+/** Every fall of at least the noise's prominence. A fall starts where the level last stood near its peak, at most five minutes before. */
 export function findFalls(track: Track): Fall[] {
   const prominence = Math.max(DETECTION.prominencePpm, DETECTION.prominenceSigmas * track.sigmaPpm)
   const falls: Fall[] = []
@@ -63,7 +63,7 @@ export function findFalls(track: Track): Fall[] {
       if (i > to && timeS[i]! - timeS[i - 1]! > DETECTION.silenceS) break
       end = i
     }
-    const fromS = Math.max(timeS[from]!, timeS[start]! - 900)
+    const fromS = Math.max(timeS[from]!, timeS[start]! - 300)
     if (ppm[from]! - ppm[to]! < DETECTION.leastDropPpm) return
     // a level that stays low for hours has a trough anywhere in it
     const restS = timeS[end]!

@@ -112,14 +112,16 @@ export function floorAfter(track: Track, fall: Fall, date: string): QuietFloor |
   return { date, atS, ppm: level, sdPpm, slopePpmPerHour: slope, reached: true }
 }
 
-/** Every level at which the room came to rest, none of them well above the lowest level of the record. */
+/** Every level at which the room came to rest, none of them well above the lowest level of the record or of other nights. */
 export function restingLevels(
   track: Track,
   falls: readonly Fall[],
   lowest: QuietFloor | null,
   date: string,
+  history: readonly QuietFloor[] = [],
 ): QuietFloor[] {
-  const ceiling = (lowest?.ppm ?? Number.POSITIVE_INFINITY) + 28 + 2 * track.sigmaPpm
+  const today = (lowest?.ppm ?? Number.POSITIVE_INFINITY) + 28 + 2 * track.sigmaPpm
+  const otherwise = Math.min(...history.map((floor) => floor.ppm)) + 60
   const found = falls.map((fall) => floorAfter(track, fall, date)).filter((floor) => floor !== null)
-  return found.filter((floor) => floor.ppm <= ceiling)
+  return found.filter((floor) => floor.ppm <= Math.min(today, otherwise))
 }

@@ -4,7 +4,7 @@ import type { Background, Check, EstimateKind, Quality, Reason } from '@/lib/air
 import { median } from '@/lib/math/robust'
 import { type CleanRecord, type Interval, indexAt } from './clean'
 import { rateWords } from './explain'
-import type { Reading } from './read-fall'
+import type { Reading } from './run'
 
 export type Verdict = { kind: EstimateKind; quality: Quality; reasons: Reason[]; checks: Check[] }
 

@@ -7,7 +7,8 @@ import { explainDecay } from './explain'
 import type { Fall } from './falls'
 import { judgeReading, pointsInside, type Suspicion } from './judge'
 import type { Moded } from './modes'
-import type { FallReading, Reading } from './read-fall'
+import type { FallReading } from './read-fall'
+import type { Reading } from './run'
 
 type Day = { date: string; dayStartS: number; dayEndS: number }
 

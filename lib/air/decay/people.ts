@@ -4,8 +4,9 @@
  * would matter: one quiet person, or a rate wrong by a fifth.
  */
 import { QUIET_PERSON_LPS } from '@/lib/air/constants'
+import { quantile } from '@/lib/math/robust'
 import type { Prior } from './piecewise'
-import type { Reading } from './read-fall'
+import type { Reading } from './run'
 
 /** A share by which people may falsify a rate before it matters. */
 const MATTERS = 1.2
@@ -41,11 +42,13 @@ export function shapeEvidence(reading: Reading, prior: Prior, volumeM3: number):
 /** Log likelihood ratio of "empty" from rates that this room is known to have: near one of them speaks for empty, below them all a little against. */
 export function rateEvidence(reading: Reading, known: readonly number[]): number {
   if (known.length === 0) return 0
+  // a stopped fan's rate would excuse anything: only the faster rates count
+  const fast = known.filter((rate) => rate > 0.55 * quantile(known, 0.8))
   const { regression, background } = reading.estimate.parts
   const sd = Math.hypot(0.06, regression, background)
   const own = Math.log(Math.max(0.01, reading.piece.ratePerHour))
   let best = Number.NEGATIVE_INFINITY
-  for (const rate of known) {
+  for (const rate of fast) {
     const z = (own - Math.log(rate)) / sd
     best = Math.max(best, -0.5 * z * z - Math.log(sd * Math.sqrt(2 * Math.PI)))
   }

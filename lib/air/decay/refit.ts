@@ -8,7 +8,7 @@ import { rateEstimate, residualSd, reweighed } from './interval'
 import { judgeReading } from './judge'
 import { withMixing } from './noise'
 import { type Binned, backgroundAt, fitPiecewise, type Prior, roughStart } from './piecewise'
-import type { Reading } from './read-fall'
+import type { Reading } from './run'
 
 export type RefitInput = {
   series: Series

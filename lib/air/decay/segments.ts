@@ -9,8 +9,11 @@ const MAX_BREAKS = 3
 /** Gain in chi squared (per unit variance) that one more break must bring: two unknowns at 2 ln n and a margin of six. */
 const gainAsked = (n: number) => 2 * Math.log(Math.max(8, n)) + 6
 
-/** How much a hinge at each bin would lower chi squared, to first order: the score of the hinge outside the span of the present model. */
-function hingeScores(data: Binned, fit: PiecewiseFit, prior: Prior | null): Float64Array {
+/**
+ * What a hinge at each bin would bring, to first order, as a signed number of standard deviations (its square is the fall of chi squared): the
+ * hinge's score outside the span of the present model. Positive where the rate rises there.
+ */
+export function hingeScores(data: Binned, fit: PiecewiseFit, prior: Prior | null): Float64Array {
   const n = data.timeH.length
   const rates = fit.ratesPerHour.length
   const size = rates + 3
@@ -58,7 +61,7 @@ function hingeScores(data: Binned, fit: PiecewiseFit, prior: Prior | null): Floa
     }
     for (let a = 0; a < size; a++)
       for (let b = 0; b < size; b++) own -= cross[a]! * inverse[a * size + b]! * cross[b]!
-    scores[m] = own > 1e-9 ? (along * along) / own : 0
+    scores[m] = own > 1e-9 ? along / Math.sqrt(own) : 0
   }
   return scores
 }
@@ -124,7 +127,7 @@ function nearestBin(data: Binned, timeH: number): number {
 }
 
 function addBreak(data: Binned, fit: PiecewiseFit, prior: Prior | null, leastH: number): PiecewiseFit | null {
-  const scores = hingeScores(data, fit, prior)
+  const scores = hingeScores(data, fit, prior).map((score) => score * score)
   let best: PiecewiseFit | null = null
   const tried: number[] = []
   for (let attempt = 0; attempt < 2; attempt++) {
