@@ -43,6 +43,8 @@ export function openDatabase(options: {
     query_timeout: options.queryTimeoutMs,
   })
   pool.on('error', (error) => options.onError?.(error))
+  // a connection lost between two statements of a transaction must fail its next statement, not end the process
+  pool.on('connect', (client) => client.on('error', () => undefined))
   const takesRole = new URL(options.url).username !== appRole
   const handle = drizzle(pool, { schema })
 
