@@ -63,7 +63,7 @@ function fitWindow(records: readonly (readonly Sample[])[], fromS: number, endS:
 }
 
 /** Starts of the late part, as shares of the record's length: the earliest that an exponential describes to within noise is used. */
-const LATE_STARTS = [0.35, 0.5, 0.65]
+const LATE_STARTS = [0.45, 0.65]
 const LEAST_SAMPLES = 8
 
 /**
@@ -99,10 +99,10 @@ export function fitSteady(records: readonly (readonly Sample[])[]): Steady | nul
   const windowDoubt = index === -1 ? Math.max(...others) / 2 : 0
   const last = chosen.used.map((samples) => samples.at(-1)![1])
   const beyond = Math.abs(level - last.reduce((sum, value) => sum + value, 0) / last.length)
-  const rateDoubt = 1.5 * Math.sqrt(chosen.variance * levelVariance)
+  const rateDoubt = 1.8 * Math.sqrt(chosen.variance * levelVariance)
   return {
     level,
-    standardUncertainty: Math.hypot(rateDoubt, windowDoubt, 0.05 * beyond),
+    standardUncertainty: Math.hypot(rateDoubt, windowDoubt, 0.12 * beyond),
     reachedShare: 1 - beyond / Math.max(Math.abs(level), 1e-300),
   }
 }

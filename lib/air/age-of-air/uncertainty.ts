@@ -1,4 +1,4 @@
-import { seededRandom } from '@/lib/math/seeded'
+import { type SeededRandom, seededRandom } from '@/lib/math/seeded'
 import { noiseOf, tidy } from './curve'
 import { type FiguresAndMoments, figuresOf, flatten } from './figures'
 import { type NormalisedTest, normaliseTest } from './normalise'
@@ -8,17 +8,35 @@ import type { Sample, TracerTest } from './types'
 const COPIES = 60
 const SEED = 20260301
 
-function noisyCopy(test: TracerTest, random: ReturnType<typeof seededRandom>): TracerTest {
-  const shake = (samples: readonly Sample[]): Sample[] => {
-    const clean = tidy(samples)
-    const sd = noiseOf(clean.filter(([t]) => t > 0).map(([, value]) => value))
-    return clean.map(([t, value]) => [t, value + sd * random.normal()] as const)
-  }
-  return {
-    ...test,
-    exhaust: test.exhaust ? shake(test.exhaust) : null,
-    points: Object.fromEntries(Object.entries(test.points).map(([name, samples]) => [name, shake(samples)])),
-  }
+/** Savitzky & Golay 1964, quadratic over seven samples (coefficients from memory, they sum to 1); ends are left as they are. */
+const SMOOTH = [-2, 3, 6, 7, 6, 3, -2].map((weight) => weight / 21)
+
+function smoothOf(values: readonly number[]): number[] {
+  return values.map((value, i) =>
+    i < 3 || i > values.length - 4
+      ? value
+      : SMOOTH.reduce((sum, weight, k) => sum + weight * values[i - 3 + k]!, 0),
+  )
+}
+
+type Quiet = { clean: Sample[]; sd: number }
+
+/** A record with its noise smoothed out, and that noise's sd. */
+function quietOf(samples: readonly Sample[]): Quiet {
+  const clean = tidy(samples)
+  const sd = noiseOf(clean.filter(([t]) => t > 0).map(([, value]) => value))
+  const start = clean.findIndex(([t]) => t > 0)
+  const smooth = smoothOf(clean.slice(start).map(([, value]) => value))
+  return { clean: clean.map(([t, value], i) => [t, i < start ? value : smooth[i - start]!] as const), sd }
+}
+
+type QuietTest = { exhaust: Quiet | null; points: Record<string, Quiet> }
+
+function noisyCopy(test: TracerTest, quiet: QuietTest, random: SeededRandom): TracerTest {
+  const shake = ({ clean, sd }: Quiet): Sample[] =>
+    clean.map(([t, value]) => [t, value + sd * random.normal()] as const)
+  const points = Object.entries(quiet.points).map(([name, record]) => [name, shake(record)] as const)
+  return { ...test, exhaust: quiet.exhaust ? shake(quiet.exhaust) : null, points: Object.fromEntries(points) }
 }
 
 /** Sum of squared ln-differences from the base, for figures that exist in both. */
@@ -35,16 +53,31 @@ function addDifference(
   }
 }
 
-/** Noise: the spread of the figures when as much noise again is put on every sample. */
+/** Noise: variance of ln of each figure among copies of the smoothed record with fresh noise, everything fitted again in each. */
 function noiseVariances(test: TracerTest, base: Map<string, number>, noisy: boolean): Map<string, number> {
-  const variances = new Map<string, number>()
-  if (!noisy) return variances
+  const logs = new Map<string, number[]>()
+  if (!noisy) return new Map()
   const random = seededRandom(SEED)
-  for (let copy = 0; copy < COPIES; copy++) {
-    const figures = flatten(figuresOf(normaliseTest(noisyCopy(test, random))).figures)
-    addDifference(variances, base, figures, 1 / COPIES)
+  const quiet = {
+    exhaust: test.exhaust ? quietOf(test.exhaust) : null,
+    points: Object.fromEntries(
+      Object.entries(test.points).map(([name, samples]) => [name, quietOf(samples)]),
+    ),
   }
-  return variances
+  for (let copy = 0; copy < COPIES; copy++) {
+    const figures = flatten(figuresOf(normaliseTest(noisyCopy(test, quiet, random))).figures)
+    for (const name of base.keys()) {
+      const value = figures.get(name) ?? Number.NaN
+      if (value > 0) logs.set(name, [...(logs.get(name) ?? []), Math.log(value)])
+    }
+  }
+  return new Map(
+    [...logs].map(([name, values]) => {
+      const mean = values.reduce((sum, value) => sum + value, 0) / values.length
+      const squares = values.reduce((sum, value) => sum + (value - mean) ** 2, 0)
+      return [name, squares / Math.max(1, values.length - 1)]
+    }),
+  )
 }
 
 /** How much the tail's doubt is worth for one figure: its rate is wrong by the doubt of that record's tail. */

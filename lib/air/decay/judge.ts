@@ -94,6 +94,7 @@ export function pointsInside(record: CleanRecord, fromS: number, toS: number): n
 /** True when the rate is so fast or so slow that only a bound is honest. */
 function boundKind(reading: Reading, record: CleanRecord): EstimateKind {
   const { estimate, piece } = reading
+  if (reading.demand) return 'range'
   const wide = halfWidth(reading) > GATES.doubtfulHalfWidth
   const falls = (record.stepS / 3600) * estimate.ratePerHour
   if (falls > 0.9 || (wide && falls > 0.5)) return 'at-least'
@@ -117,7 +118,8 @@ export function judgeReading(
   const rate = reading.estimate.ratePerHour
   if (!start)
     (reading.piece.startExcessPpm < 0.55 * GATES.startExcessPpm ? refusals : doubts).push('start-too-low')
-  if (kind === 'fit') {
+  if (kind === 'range') doubts.push('demand-controlled')
+  else if (kind === 'fit') {
     if (!length || !fall)
       (halfWidth(reading) > GATES.doubtfulHalfWidth / 2 ? refusals : doubts).push('too-short')
     if (!points)

@@ -122,6 +122,7 @@ function readingOf(record: CleanRecord, data: Binned, prior: Prior, input: Refit
     estimate: rateEstimate(weighed, 0, residualSd(data, fit), record.stepS),
     fit,
     data,
+    demand: null,
     changeAtEnd: null,
     changeAtStart: null,
   }

@@ -1,5 +1,6 @@
 /** One run of an empty room fitted: its ends trimmed, every piece its own rate, one background. */
 import { sliceBins } from './bins'
+import { type DemandFit, fitDemand } from './demand'
 import { type RateEstimate, rateEstimate, residualSd, reweighed } from './interval'
 import { longRunScale } from './noise'
 import type { Piece } from './pieces'
@@ -17,6 +18,8 @@ import { hingeScores } from './segments'
 const SETTLING_S = 180
 /** How sure a slow beginning must be to be cut, standard deviations. */
 const TRIM_SIGMAS = 1.7
+/** How much worse than steps demand control may fit and still be taken, in chi squared: the smooth law is the likelier one. */
+const DEMAND_MARGIN = 2
 
 /** One rate over one stretch of an empty room. */
 export type Reading = {
@@ -28,6 +31,8 @@ export type Reading = {
   estimate: RateEstimate
   fit: PiecewiseFit
   data: Binned
+  /** set when the rate follows CO2: the figure is then the rate at the occupied end */
+  demand: DemandFit | null
   /** seconds; the rate changed at this window's end (or start) */
   changeAtEnd: { atS: number; lowS: number; highS: number } | null
   changeAtStart: { atS: number; lowS: number; highS: number } | null
@@ -134,6 +139,8 @@ export function readRun(run: Run): Reading[] {
   const fit = fitRun(run, part, breaksH)
   if (!fit) return []
   const weighed = reweighed(part, fit, prior)
+  const demand = slowsDown(weighed.fit) ? demandOf(part, prior, fit) : null
+  if (demand) return [demandReading(run, part, weighed, demand)]
   const scaled = { ...part, sdPpm: part.sdPpm.map((sd) => sd * weighed.factor) }
   const changes = breaksH.map((_, k) => changeInterval(scaled, weighed.fit, prior, k, originS))
   const fitted = refreshed(pieces, weighed.fit, part)
@@ -145,9 +152,62 @@ export function readRun(run: Run): Reading[] {
     estimate: rateEstimate(weighed, k, residualSd(part, weighed.fit), stepS),
     fit: weighed.fit,
     data: part,
+    demand: null,
     changeAtStart: changes[k - 1] ?? null,
     changeAtEnd: changes[k] ?? null,
   }))
+}
+
+const slowsDown = (fit: PiecewiseFit) =>
+  fit.ratesPerHour.length > 1 &&
+  fit.ratesPerHour.every((rate, k) => k === 0 || rate < fit.ratesPerHour[k - 1]!)
+
+/** Demand control, when it explains the readings about as well as steps do; a step that is really sharp is a step. */
+function demandOf(part: Binned, prior: Prior, steps: PiecewiseFit): DemandFit | null {
+  const demand = fitDemand(part, prior, steps)
+  if (!demand || demand.startRatePerHour < 1.25 * demand.endRatePerHour) return null
+  const spare = 2 * (steps.breaksH.length * 2 - 1)
+  const variance = longRunScale(steps, part).variance
+  return demand.chiSquared < steps.chiSquared + (spare + DEMAND_MARGIN) * variance ? demand : null
+}
+
+function demandReading(
+  run: Run,
+  part: Binned,
+  weighed: ReturnType<typeof reweighed>,
+  demand: DemandFit,
+): Reading {
+  const { pieces, originS, stepS } = run
+  const fromH = part.timeH[0]!
+  const toH = part.timeH[part.timeH.length - 1]!
+  const estimate = rateEstimate(weighed, 0, residualSd(part, weighed.fit), stepS)
+  const piece = {
+    ...pieces[0]!,
+    fromH,
+    toH,
+    ratePerHour: demand.startRatePerHour,
+    startExcessPpm: demand.startExcessPpm,
+    endExcessPpm: Math.max(1, part.ppm[part.ppm.length - 1]! - demand.backgroundPpm),
+  }
+  return {
+    fromS: originS + fromH * 3600,
+    toS:
+      originS +
+      usedUntil({ ...piece, ratePerHour: (demand.startRatePerHour + demand.endRatePerHour) / 2 }) * 3600,
+    piece,
+    index: 0,
+    estimate: {
+      ...estimate,
+      ratePerHour: demand.startRatePerHour,
+      lowPerHour: demand.startLowPerHour,
+      highPerHour: demand.startHighPerHour,
+    },
+    fit: weighed.fit,
+    data: part,
+    demand,
+    changeAtStart: null,
+    changeAtEnd: null,
+  }
 }
 
 /** The pieces with the rates and levels of the final fit. */
