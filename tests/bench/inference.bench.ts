@@ -25,7 +25,7 @@ for (const name of names)
 
 const WAYS = ['Ebbmark', 'textbook', 'told window'] as const
 type Way = (typeof WAYS)[number]
-type Way2Judgements = Record<Way, Judgement[]>
+type JudgementsByWay = Record<Way, Judgement[]>
 
 const folder = chosen.keep || mkdtempSync(join(tmpdir(), 'ebbmark-bench-'))
 const commandIsThere = existsSync('ingest/analyse/main.ts')
@@ -52,8 +52,8 @@ async function judgeAll(building: TruthBuilding, part: number): Promise<[Record<
 }
 
 /** Two buildings to a class: one with an outdoor sensor, one without. */
-async function runClass(className: string): Promise<[Way2Judgements, number]> {
-  const judgements: Way2Judgements = { Ebbmark: [], textbook: [], 'told window': [] }
+async function runClass(className: string): Promise<[JudgementsByWay, number]> {
+  const judgements = none()
   let seconds = 0
   for (const part of [0, 1]) {
     const rooms = Math.floor((roomsPerClass + part) / 2)
@@ -108,7 +108,11 @@ function rowOf(name: string, way: Way, s: Summary): string[] {
   ]
 }
 
-const all: Way2Judgements = { Ebbmark: [], textbook: [], 'told window': [] }
+/** Ordinary rooms in which one well-mixed zone meets outdoor air: pooled on their own as well. */
+const FIRST_SEVEN = ['clean', 'noisy', 'short', 'cleaners', 'shut-off', 'drift', 'demand']
+const none = (): JudgementsByWay => ({ Ebbmark: [], textbook: [], 'told window': [] })
+const all = none()
+const seven = none()
 const figures: Record<string, unknown> = {}
 const rows: string[][] = []
 let analyseSeconds = 0
@@ -120,9 +124,12 @@ for (const name of names) {
   for (const way of WAYS) {
     rows.push(rowOf(name, way, summaries[way]!))
     all[way].push(...judgements[way])
+    if (FIRST_SEVEN.includes(name)) seven[way].push(...judgements[way])
   }
 }
 const pooled = Object.fromEntries(WAYS.map((way) => [way, summarise(all[way])]))
+if (seven.Ebbmark.length === 2 * FIRST_SEVEN.length)
+  for (const way of WAYS) rows.push(rowOf('first seven', way, summarise(seven[way])))
 for (const way of WAYS) rows.push(rowOf('all classes', way, pooled[way]!))
 if (!chosen.keep) rmSync(folder, { recursive: true, force: true })
 
@@ -143,5 +150,6 @@ writeReport('inference', {
   analyseSeconds,
   ratios: { medianError: ratio('medianError'), p90Error: ratio('p90Error') },
   pooled,
+  firstSeven: Object.fromEntries(WAYS.map((way) => [way, summarise(seven[way])])),
   classes: figures,
 })

@@ -100,11 +100,15 @@ function referenceRate(room: TruthRoom, truth: Interval, answer: Answer): number
   return Math.min(truth.totalPerHour, Math.max(truth.outdoorPerHour, answer.ach ?? truth.totalPerHour))
 }
 
-function boundHolds(answer: Answer, truth: Interval, rate: number): boolean | null {
+/**
+ * Does what is said hold? A bound against the rate over its window; a range, which speaks for the occupied end, against the rates in force
+ * in the window's first quarter of an hour.
+ */
+function boundHolds(answer: Answer, first: Interval, rate: number): boolean | null {
   if (answer.kind === 'at-least') return answer.ach_low !== null && rate >= answer.ach_low
   if (answer.kind === 'at-most') return answer.ach_high !== null && rate <= answer.ach_high
   if (answer.kind !== 'range' || answer.ach_low === null || answer.ach_high === null) return null
-  return truth.startOutdoorPerHour >= answer.ach_low && truth.startOutdoorPerHour <= answer.ach_high
+  return first.highestPerHour >= answer.ach_low && first.lowestPerHour <= answer.ach_high
 }
 
 function overlapShare(startS: number, endS: number, fromS: number, toS: number): number {
@@ -141,7 +145,10 @@ function judgeOne(building: TruthBuilding, room: TruthRoom, evenings: Evening[],
       answer.quality === 'accepted' &&
       (truth.peopleMinutes * 60 > (endS - startS) / 2 || truth.startExcessPpm < 50),
     nightRight: answer.night === localDate(building.zone, secondsOf(answer.start)),
-    boundHolds: answer.quality === 'refused' ? null : boundHolds(answer, truth, rate),
+    boundHolds:
+      answer.quality === 'refused'
+        ? null
+        : boundHolds(answer, describe(room.truth, startS, startS + 900), rate),
     outdoorHolds: outdoorGiven
       ? truth.outdoorPerHour >= answer.outdoor_ach_low! && truth.outdoorPerHour <= answer.outdoor_ach_high!
       : null,

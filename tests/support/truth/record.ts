@@ -27,8 +27,6 @@ export type EmptySpell = {
 export type Interval = {
   outdoorPerHour: number
   totalPerHour: number
-  /** (outdoor flow x (C − Co) + neighbour's x (C − Cn)) / (C − Co): what a single fit would see is between outdoor and total */
-  startOutdoorPerHour: number
   peopleMinutes: number
   /** the lowest and highest rate in force (a minute's mean) */
   lowestPerHour: number
@@ -88,7 +86,6 @@ export function describe(truth: Truth, startS: number, endS: number): Interval {
   return {
     outdoorPerHour: outdoorSum / (b - a),
     totalPerHour: totalSum / (b - a),
-    startOutdoorPerHour: truth.outdoorPerHour[a]!,
     peopleMinutes,
     lowestPerHour: lowest,
     highestPerHour: highest,
