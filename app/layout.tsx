@@ -11,6 +11,7 @@ export const metadata: Metadata = {
   description: 'How much outdoor air every room gets, from the CO2 that people leave behind.',
   applicationName: 'Ebbmark',
   manifest: '/manifest.webmanifest',
+  icons: { icon: '/icon.svg' },
   robots: { index: false, follow: false },
 }
 

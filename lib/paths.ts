@@ -10,6 +10,7 @@ export const paths = {
   room: (room: string) => `/rooms/${part(room)}`,
   airChange: () => '/air-change',
   decays: () => '/decays',
+  decaysOf: (room: string) => `/decays?room=${part(room)}&show=all`,
   decay: (decay: string) => `/decays/${part(decay)}`,
   sensors: () => '/sensors',
   registerSensor: () => '/sensors/register',

@@ -10,7 +10,7 @@ type Props = { rooms: readonly RoomTile[]; board: Board; nowS: number; brief: bo
 /** The rooms that need someone, most urgent first, each with why and the one thing to do. `brief` where many stand beside each other. */
 export function NeedsSomeone({ rooms, board, nowS, brief, linked }: Props) {
   return (
-    <section aria-label="Need someone, most urgent first" className="border-t-[3px] border-ink">
+    <section aria-label="Need someone, most urgent first" className="-mb-px border-t-[3px] border-ink">
       <ol
         className={cx(
           'grid max-sm:grid-cols-1',

@@ -7,7 +7,7 @@ import { useNow } from '@/components/live/use-now'
 import { Filters } from '@/components/ui/Filters'
 import { EmptyState } from '@/components/ui/States'
 import { isShown, needSomeone, type Show } from '@/lib/format/board'
-import { type BoardFilter, boardFilters, hasTenancy, isClose } from '@/lib/format/board-filter'
+import { type BoardFilter, boardAddress, boardFilters, hasTenancy, isClose } from '@/lib/format/board-filter'
 import { paths } from '@/lib/paths'
 import type { Board } from '@/lib/wire/live-board'
 import { BoardFloors } from './BoardFloors'
@@ -16,6 +16,8 @@ import { BoardKey } from './BoardKey'
 import { LevelGlass } from './LevelGlass'
 import { NeedsSomeone } from './NeedsSomeone'
 
+/** How many rooms the strip holds at most; the others stay in their places, and the headline counts them all. */
+const MOST_ABOVE = 12
 /** After this long without a stream the head says so; a reconnect is quicker. */
 const PATIENCE_MS = 5000
 
@@ -39,7 +41,8 @@ export function RoundsBoard({ initial, filter }: { initial: Board; filter: Board
     (room) => hasTenancy(room, filter.tenancy) && (filter.floor === null || room.floorId === filter.floor),
   )
   const needing = needSomeone(walked)
-  const above = new Set(needing.map(({ id }) => id))
+  const strip = needing.slice(0, MOST_ABOVE)
+  const above = new Set(strip.map(({ id }) => id))
   const rooms = walked.filter((room) => isShown(room, filter.show))
   const close = isClose(filter, board.rooms.length)
   return (
@@ -52,16 +55,25 @@ export function RoundsBoard({ initial, filter }: { initial: Board; filter: Board
         state={state}
         live={misses}
       />
-      {needing.length > 0 && (
-        <NeedsSomeone rooms={needing} board={board} nowS={nowS} brief={needing.length > 4} linked />
+      {strip.length > 0 && (
+        <NeedsSomeone rooms={strip} board={board} nowS={nowS} brief={strip.length > 4} linked />
       )}
       <Filters
         label="Which rooms"
         groups={boardFilters(board, walked, filter)}
         end={
-          <Link href={paths.wall()} className="plain-link text-ink-2">
-            Wall screen
-          </Link>
+          <span className="flex gap-[14px]">
+            <Link
+              href={boardAddress({ ...filter, tiles: close ? 'full' : 'close' })}
+              scroll={false}
+              className="plain-link text-ink-2 max-sm:py-[11px]"
+            >
+              {close ? 'Full tiles' : 'Close tiles'}
+            </Link>
+            <Link href={paths.wall()} className="plain-link text-ink-2 max-sm:py-[11px]">
+              Wall screen
+            </Link>
+          </span>
         }
       />
       {rooms.length === 0 ? (

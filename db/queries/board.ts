@@ -21,6 +21,9 @@ export type BoardSensor = {
   intervalS: number
   suspectSinceS: number | null
   suspectReason: string | null
+  /** newest reading ever, for a sensor that has been silent since before today */
+  lastS: number | null
+  lastPpm: number | null
 }
 
 const epochOf = (name: string) => sql<number>`extract(epoch from ${sql.raw(name)})::double precision`
@@ -72,6 +75,12 @@ export function listBoardSensors(tx: Tx, { buildingId }: { buildingId: number })
       intervalS: sensors.intervalS,
       suspectSinceS: sql<number | null>`extract(epoch from ${sensors.suspectSince})::double precision`,
       suspectReason: sensors.suspectReason,
+      lastS: sql<
+        number | null
+      >`(SELECT extract(epoch from l.at)::double precision FROM visible_latest l WHERE l.sensor_id = ${sensors.id})`,
+      lastPpm: sql<
+        number | null
+      >`(SELECT l.co2_ppm::double precision FROM visible_latest l WHERE l.sensor_id = ${sensors.id})`,
     })
     .from(placements)
     .innerJoin(sensors, eq(sensors.id, placements.sensorId))

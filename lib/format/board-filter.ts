@@ -78,16 +78,5 @@ export function boardFilters(board: Board, walked: readonly RoomTile[], filter: 
       count: walked.filter((room) => isShown(room, show)).length,
     })),
   }
-  const close = isClose(filter, board.rooms.length)
-  const tiles = {
-    label: 'Tiles',
-    choices: (['full', 'close'] as const).map((look) => ({
-      word: look,
-      href: boardAddress({ ...filter, tiles: look }),
-      current: close === (look === 'close'),
-    })),
-  }
-  return [floors, tenants, shows, tiles].filter(
-    ({ choices, label }) => choices.length > 2 || label === 'Tiles',
-  )
+  return [floors, tenants, shows].filter(({ choices }) => choices.length > 2)
 }

@@ -54,7 +54,10 @@ export function boardOf(plan: BoardPlan, series: Known, nowS: number): Board {
 
 /** A sensor's readings with the offsets that a fresh-air check found; the raw ones stay as they are. */
 function corrected(plan: BoardPlan, sensor: BoardSensor, series: Known): readonly LiveReading[] {
-  const readings = series.get(sensor.sensorId) ?? []
+  const { lastS, lastPpm } = sensor
+  const earlier = lastS === null || lastPpm === null ? [] : [{ timeS: lastS, co2Ppm: lastPpm }]
+  const today = series.get(sensor.sensorId) ?? []
+  const readings = today.length > 0 ? today : earlier
   const offsets = plan.offsets.filter(({ sensorId }) => sensorId === sensor.sensorId)
   if (offsets.length === 0) return readings
   return readings.map(({ timeS, co2Ppm }) => {

@@ -11,11 +11,7 @@ export default async function WallPage() {
   const page = await requirePage('rounds.read')
   const board = page.building && (await boardFor(page.scope, page.building.id, { wall: true }))
   return (
-    <main
-      id="main"
-      data-wall
-      className="mx-auto max-w-page px-10 pb-6 [zoom:1.15] max-sm:px-5 wall:[zoom:1.7]"
-    >
+    <main id="main" data-wall className="px-10 pb-6 [zoom:1.2] max-sm:px-5 wall:[zoom:1.9]">
       {board && board.rooms.length > 0 ? (
         <WallBoard key={board.building.slug} initial={board} />
       ) : (
