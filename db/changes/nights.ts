@@ -1,10 +1,11 @@
 import { and, eq, inArray, isNull, ne, sql } from 'drizzle-orm'
-import type { Decay } from '@/lib/air/types'
+import type { BackgroundOrigin, Decay } from '@/lib/air/types'
 import { canonicalJson } from '../canonical-json'
 import type { Tx } from '../client'
 import { newPublicId } from '../public-id'
 import { type Carried, currentDecays, finishedRuns } from '../queries/nights'
 import { decayReviews, decays, lateReadings, nightRuns } from '../schema'
+import { addAuditEvent } from './audit'
 import { notifyLive } from './notice'
 
 export type DecayRow = typeof decays.$inferSelect
@@ -27,7 +28,23 @@ export type NightResult = {
   carried: Carried
 }
 
-export type StoredNight = { changed: boolean; added: number; superseded: number }
+/** A review whose own window now holds other readings, and the background to fit it with. */
+export type ReviewToRefit = {
+  reviewId: number
+  sensorId: number
+  fromS: number
+  toS: number
+  background: Decay['background']
+}
+
+export type StoredNight = {
+  changed: boolean
+  added: number
+  superseded: number
+  reviewsToRefit: ReviewToRefit[]
+}
+
+const NOTHING_CHANGED: StoredNight = { changed: false, added: 0, superseded: 0, reviewsToRefit: [] }
 
 const instant = (epochS: number | null) => (epochS === null ? null : new Date(Math.round(epochS * 1000)))
 
@@ -97,9 +114,20 @@ function compare(standing: readonly DecayRow[], fresh: readonly NewDecay[]) {
 const overlapMs = (a: { from: Date; to: Date }, b: { from: Date; to: Date }) =>
   Math.min(a.to.getTime(), b.to.getTime()) - Math.max(a.from.getTime(), b.from.getTime())
 
+function backgroundOf(row: DecayRow): Decay['background'] {
+  const { backgroundPpm: ppm, backgroundUncertaintyPpm: standardUncertaintyPpm, backgroundOrigin } = row
+  if (ppm === null || standardUncertaintyPpm === null) return null
+  return { ppm, standardUncertaintyPpm, origin: backgroundOrigin as BackgroundOrigin }
+}
+
 /** A review belongs to room and interval: it follows to the decay that now covers its window, and says so where the readings changed. */
-async function moveReviews(tx: Tx, gone: readonly DecayRow[], added: readonly DecayRow[]): Promise<void> {
-  if (gone.length === 0) return
+async function moveReviews(
+  tx: Tx,
+  gone: readonly DecayRow[],
+  added: readonly DecayRow[],
+): Promise<ReviewToRefit[]> {
+  const toRefit: ReviewToRefit[] = []
+  if (gone.length === 0) return toRefit
   const ids = gone.map((row) => row.id)
   const reviews = await tx
     .select()
@@ -121,7 +149,16 @@ async function moveReviews(tx: Tx, gone: readonly DecayRow[], added: readonly De
       .update(decayReviews)
       .set({ decayId: after?.id ?? before.id, dataChanged: review.dataChanged || !sameReadings })
       .where(eq(decayReviews.id, review.id))
+    if (!sameReadings && review.decision === 'keep with window')
+      toRefit.push({
+        reviewId: review.id,
+        sensorId: before.sensorId,
+        fromS: review.fromAt.getTime() / 1000,
+        toS: review.toAt.getTime() / 1000,
+        background: backgroundOf(after ?? before),
+      })
   }
+  return toRefit
 }
 
 async function storeDecays(tx: Tx, night: NightResult) {
@@ -146,8 +183,8 @@ async function storeDecays(tx: Tx, night: NightResult) {
             set: { supersededAt: null, provisional: sql`excluded.provisional` },
           })
           .returning()
-  await moveReviews(tx, gone, rows)
-  return { added: rows.length, superseded: gone.length }
+  const reviewsToRefit = await moveReviews(tx, gone, rows)
+  return { added: rows.length, superseded: gone.length, reviewsToRefit }
 }
 
 async function storeRun(tx: Tx, night: NightResult): Promise<void> {
@@ -185,11 +222,42 @@ export async function storeNight(tx: Tx, night: NightResult): Promise<StoredNigh
   const { buildingId, methodVersion, date } = night
   const [last] = await finishedRuns(tx, { buildingId, methodVersion, fromDate: date, toDate: date })
   const same = last?.inputHash === night.inputHash && last.provisional === night.provisional
-  if (same) return { changed: false, added: 0, superseded: 0 }
+  if (same) return NOTHING_CHANGED
   const stored = await storeDecays(tx, night)
   await storeRun(tx, night)
   await notifyLive(tx, 'night', [buildingId])
   return { changed: true, ...stored }
+}
+
+/** Takes over what a reviewer's window gives after late readings; null figures where it gives none any more. The audit trail has both. */
+export async function storeRefit(
+  tx: Tx,
+  { reviewId, rates }: { reviewId: number; rates: { rate: number; low: number; high: number } | null },
+): Promise<void> {
+  const [before] = await tx.select().from(decayReviews).where(eq(decayReviews.id, reviewId))
+  if (!before) return
+  const figures = {
+    airChangeRatePerHour: rates?.rate ?? null,
+    airChangeRateLowPerHour: rates?.low ?? null,
+    airChangeRateHighPerHour: rates?.high ?? null,
+  }
+  await tx.update(decayReviews).set(figures).where(eq(decayReviews.id, reviewId))
+  await addAuditEvent(tx, {
+    organizationId: before.organizationId,
+    userId: null,
+    action: 'decay.refitted',
+    subjectKind: 'decay review',
+    subjectId: String(reviewId),
+    detail: {
+      from: {
+        rate: before.airChangeRatePerHour,
+        low: before.airChangeRateLowPerHour,
+        high: before.airChangeRateHighPerHour,
+      },
+      to: rates,
+      reason: 'readings of its window changed since the review',
+    },
+  })
 }
 
 /** Records that the analysis of a night failed and why, so that health and the next tick see it. */

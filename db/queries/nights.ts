@@ -22,7 +22,9 @@ export type DayFacts = {
 /** What one night leaves for later ones, for findings and digests; keys are sensor ids, air handler ids and room ids. */
 export type Carried = {
   quietFloors?: Record<string, QuietFloor>
-  /** with the wall clock of each stop, seconds after local midnight */
+  /** rates of the night that are sure, 1/h */
+  sureRates?: Record<string, number[]>
+  /** with the clock of each stop, seconds after local midnight */
   supplyStops?: Record<string, (SupplyStop & { clockS: number })[]>
   days?: Record<string, DayFacts>
   notes?: { roomId: number; sensorId: number; code: string; text: string; atS?: number }[]

@@ -48,7 +48,8 @@ function queuedTask<Task extends JobTask>(job: Job<Task>, base: Omit<JobContext,
     }
     const startedMs = Date.now()
     await job.run(parsed.data, contextFor(base, helpers))
-    log().info({ task: job.task, ...parsed.data, ms: Date.now() - startedMs }, 'job done')
+    const told: object = { task: job.task, ...parsed.data, ms: Date.now() - startedMs }
+    log().info(told, 'job done')
   }
 }
 
@@ -65,7 +66,7 @@ const quiet: Record<string, 'error' | 'warn' | 'debug'> = { error: 'error', warn
 const queueLogger = new Logger(() => (level, message, meta) => {
   log()[quiet[level] ?? 'debug'](
     { queue: meta?.error instanceof Error ? meta.error.message : undefined },
-    message,
+    String(message),
   )
 })
 

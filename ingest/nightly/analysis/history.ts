@@ -1,5 +1,5 @@
 import { setImmediate } from 'node:timers/promises'
-import { type StoredNight, storeFailedNight, storeNight } from '@/db/changes/nights'
+import { type StoredNight, storeFailedNight, storeNight, storeRefit } from '@/db/changes/nights'
 import type { Database } from '@/db/client'
 import { type BuildingPlan, requireBuildingPlan, supplyStatesBetween } from '@/db/queries/building-plan'
 import { finishedRuns, type NightRun } from '@/db/queries/nights'
@@ -10,6 +10,7 @@ import { type Clock, systemClock } from '@/lib/server/clock'
 import { addDays } from '@/lib/time'
 import { CARRIED_NIGHTS, type SupplyRow } from './inputs'
 import { analyseNight } from './night'
+import { refitReviews } from './refit-reviews'
 import { type NightWindow, nightWindow } from './window'
 
 /** Nights read from the database in one pass: enough to share the overlap, few enough for a building of 500 sensors. */
@@ -84,11 +85,14 @@ async function runNight(
   const material = { ...batch, window, before, methodVersion: METHOD_VERSION }
   try {
     const result = analyseNight(material, sameStage ? known.inputHash : null)
-    if (!('found' in result)) return { changed: false, added: 0, superseded: 0 }
+    if (!('found' in result)) return { changed: false, added: 0, superseded: 0, reviewsToRefit: [] }
     const finishedAt = clock.now()
-    const stored = await database.asSystem('store a night', (tx) =>
-      storeNight(tx, { ...night, ...result, finishedAt }),
-    )
+    const stored = await database.asSystem('store a night', async (tx) => {
+      const outcome = await storeNight(tx, { ...night, ...result, finishedAt })
+      for (const { reviewId, rates } of refitReviews(plan, batch.records, outcome.reviewsToRefit))
+        await storeRefit(tx, { reviewId, rates })
+      return outcome
+    })
     runs.set(window.date, { localDate: window.date, finishedAt, ...result, provisional: night.provisional })
     return stored
   } catch (error) {

@@ -11,8 +11,9 @@ import { withOffsets } from './offsets'
 import { roomSpecOf } from './rooms'
 import type { NightWindow } from './window'
 
-/** Nights whose quiet floors and supply stops are handed to a later one. */
+/** Nights whose quiet floors, sure rates and supply stops are handed to a later one, and the most rates. */
 export const CARRIED_NIGHTS = 14
+const CARRIED_RATES = 12
 
 export type SupplyRow = {
   airHandlerId: number
@@ -66,6 +67,7 @@ function historyOf(
   const nights = before.filter((run) => run.localDate >= since && run.localDate < window.date)
   return {
     quietFloors: nights.flatMap((run) => run.carried.quietFloors?.[sensorId] ?? []),
+    recentRates: nights.flatMap((run) => run.carried.sureRates?.[sensorId] ?? []).slice(-CARRIED_RATES),
     supplyStops: nights.flatMap((run) =>
       (run.carried.supplyStops?.[airHandlerId ?? ''] ?? []).map((stop) => ({
         date: run.localDate,

@@ -1,19 +1,13 @@
 import type { FoundDecay, NightResult } from '@/db/changes/nights'
 import type { Carried } from '@/db/queries/nights'
-import { analyseBuildingDay, type BuildingDay, type RoomDay } from '@/lib/air/analyse-building'
+import { analyseBuildingDay, type BuildingDay, type RoomDay, sureRates } from '@/lib/air/analyse-building'
 import { DEFAULT_OUTDOOR } from '@/lib/air/constants'
-import { localClock } from '@/lib/time'
 import { dayFacts, outdoorLevelOf } from './day-facts'
 import { type AnalysedSensor, type NightMaterial, nightInputs } from './inputs'
 
 export type AnalysedNight = Pick<NightResult, 'inputHash' | 'found' | 'carried' | 'roomsAnalysed'>
 
 type Pair = { sensor: AnalysedSensor; result: RoomDay }
-
-const clockSeconds = (epochS: number, timeZone: string) => {
-  const [hours, minutes] = localClock(epochS, timeZone).split(':').map(Number) as [number, number]
-  return hours * 3600 + minutes * 60 + (epochS % 60)
-}
 
 function daysOf(day: BuildingDay, sensors: readonly AnalysedSensor[]): NonNullable<Carried['days']> {
   const { dayStartS, dayEndS } = day
@@ -27,25 +21,24 @@ function daysOf(day: BuildingDay, sensors: readonly AnalysedSensor[]): NonNullab
   return days
 }
 
-function carriedOf(
-  pairs: readonly Pair[],
-  { plan }: NightMaterial,
-): Pick<Carried, 'quietFloors' | 'supplyStops' | 'notes'> {
-  const { timeZone } = plan.building
+function carriedOf(pairs: readonly Pair[], { plan, window }: NightMaterial): Omit<Carried, 'days'> {
+  const sureOnes: NonNullable<Carried['sureRates']> = {}
   const quietFloors: NonNullable<Carried['quietFloors']> = {}
   const supplyStops: NonNullable<Carried['supplyStops']> = {}
   const notes: NonNullable<Carried['notes']> = []
   for (const { sensor, result } of pairs) {
     if (result.quietFloor) quietFloors[sensor.sensorId] = result.quietFloor
+    const rates = sureRates(result)
+    if (rates.length > 0) sureOnes[sensor.sensorId] = rates
     const handler = plan.rooms.find((room) => room.id === sensor.roomId)?.airHandlerId
     if (handler && result.supplyStops.length > 0)
       supplyStops[handler] = result.supplyStops.map((stop) => ({
         ...stop,
-        clockS: clockSeconds(stop.atS, timeZone),
+        clockS: stop.atS - window.dayStartS,
       }))
     notes.push(...result.notes.map((note) => ({ roomId: sensor.roomId, sensorId: sensor.sensorId, ...note })))
   }
-  return { quietFloors, supplyStops, notes }
+  return { quietFloors, sureRates: sureOnes, supplyStops, notes }
 }
 
 /** Analyses one night, or gives only the inputs' hash where it is the known one: nothing new to be found. */
