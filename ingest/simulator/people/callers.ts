@@ -1,6 +1,6 @@
-import { weekdayOf } from '../local-time'
+import { minuteOf, weekdayOf } from '../local-time'
 import { drawsFor } from '../random'
-import type { RoomPlan } from '../scenario'
+import type { RoomActivity, RoomPlan } from '../scenario'
 import type { World } from '../world'
 import type { DaySheet } from './day-sheet'
 import { personOf } from './person'
@@ -33,11 +33,30 @@ export function receiveCallers(world: World, room: RoomPlan, day: number, sheet:
       sheet.place(caller, zone, at, at + draws.between(3, 14), COUNTER_RATE)
     }
   }
-  if (activity.kind === 'library') {
-    for (let i = Math.round(activity.visitsPerDay * draws.between(0.7, 1.3)); i > 0; i--) {
-      const at = draws.between(540, 1030)
+  if (activity.kind === 'library') readAll(world, zone, day, activity, sheet)
+}
+
+/** The library's readers: everyone leaves when it shuts, at noon and in the evening. */
+function readAll(
+  world: World,
+  zone: number,
+  day: number,
+  library: RoomActivity & { kind: 'library' },
+  sheet: DaySheet,
+): void {
+  const draws = drawsFor(world.seed, 'readers', zone, day)
+  for (const span of library.open) {
+    const [opens, shuts] = [minuteOf(span.from), minuteOf(span.to)]
+    const read = (from: number, to: number) => {
       const reader = personOf(world.seed, `visitor:${draws.whole(0, 399)}`, 22, 66)
-      sheet.place(reader, zone, at, Math.min(1095, at + draws.between(15, 110)), READING_RATE)
+      sheet.place(reader, zone, from, Math.min(to, shuts + draws.between(-3, 2)), READING_RATE)
     }
+    const visits = Math.round((library.visitsPerDay / library.open.length) * draws.between(0.7, 1.3))
+    for (let i = 0; i < visits; i++) {
+      const at = draws.between(opens, shuts - 20)
+      read(at, at + draws.between(15, 110))
+    }
+    const circle = library.circleDays.includes(weekdayOf(day)) ? draws.whole(10, 15) : 0
+    for (let i = 0; i < circle; i++) read(shuts - 95 + draws.between(-8, 8), shuts + 10)
   }
 }

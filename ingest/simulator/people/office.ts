@@ -1,6 +1,6 @@
 import { minuteOf, weekdayOf } from '../local-time'
-import { drawsFor } from '../random'
-import type { RoomPlan } from '../scenario'
+import { type Draws, drawsFor } from '../random'
+import type { RoomActivity, RoomPlan } from '../scenario'
 import type { World } from '../world'
 import { ELSEWHERE, Whereabouts } from './day-sheet'
 import { personOf } from './person'
@@ -19,21 +19,36 @@ export function officeDay(world: World, room: RoomPlan, day: number, canteen: nu
     if (!draws.chance(attendance)) continue
     const person = personOf(world.seed, `staff:${room.number}:${i}`, 23, 64)
     const stay = new Whereabouts(person, world.zoneIndex.get(room.number)!, room.activity.metabolicRate)
-    const arrive = minuteOf(room.activity.arrive) + clip(22 * draws.normal(), 55)
-    const leave = minuteOf(room.activity.leave) + clip(26 * draws.normal(), 65)
+    const { arrive, leave, lunch, back } = hoursOf(room.activity, draws)
     stay.go(stay.home, arrive, leave)
     for (let breaks = draws.whole(3, 6); breaks > 0; breaks--) {
       const at = draws.between(arrive + 20, leave - 20)
       const where = draws.chance(0.55) ? world.corridorOfFloor.get(room.floor)! : ELSEWHERE
       stay.go(where, at, at + draws.between(3, 9))
     }
-    const lunch = draws.between(720, 800)
-    const back = lunch + draws.between(30, 55)
     stay.go(ELSEWHERE, lunch, back)
     if (draws.chance(0.42)) stay.go(canteen, lunch + 3, Math.min(back - 2, lunch + draws.between(20, 34)))
     here.push(stay)
   }
   return here
+}
+
+type OfficeHours = { arrive: number; leave: number; lunch: number; back: number }
+
+/** When one person comes, eats and goes, local minutes: each in their own time, or a crew within a few minutes of each other. */
+function hoursOf(activity: RoomActivity & { kind: 'office' }, draws: Draws): OfficeHours {
+  const [come, go] = [minuteOf(activity.arrive), minuteOf(activity.leave)]
+  if (activity.together) {
+    const near = () => draws.between(-4, 3)
+    return { arrive: come + near(), leave: go + near(), lunch: 750 + near(), back: 800 + near() }
+  }
+  const lunch = draws.between(720, 800)
+  return {
+    arrive: come + clip(22 * draws.normal(), 55),
+    leave: go + clip(26 * draws.normal(), 65),
+    lunch,
+    back: lunch + draws.between(30, 55),
+  }
 }
 
 function clip(value: number, limit: number): number {

@@ -9,9 +9,6 @@ const isRoom = (zone: World['zones'][number]): zone is RoomPlan => 'activity' in
 const covers = (spans: readonly Span[], weekday: number, minute: number) =>
   spans.some((s) => minute >= s.from && minute < s.to && s.days.includes(weekday))
 
-/** A natural room's windows stand open while people work in it. */
-const WINDOWS: Span = { days: [1, 2, 3, 4, 5], from: 8 * 60, to: 16 * 60 + 45 }
-
 /** The mill's air: which flows run at an instant, from schedules, stories and the day's wind. */
 export class Plant {
   readonly net: ZoneNetwork
@@ -88,7 +85,7 @@ export class Plant {
     const { zones, scenario, story, isClosed } = this.world
     const { day, minute, weekday } = this.world.local.at(timeS)
     const wind = this.windFactor(timeS)
-    const closed = isClosed(day)
+    const isOpen = !isClosed(day) && covers([this.open], weekday, minute)
     const state = new Map(
       this.handlers.map((h) => [h.code, { on: this.runs(h, day, weekday, minute), ...h }]),
     )
@@ -97,15 +94,15 @@ export class Plant {
       const on = handler?.on === true
       const supply = on ? this.supplyM3PerHour(zone, timeS) : 0
       let outside = zone.infiltrationRatePerHour * zone.volumeM3 * wind
-      if (isRoom(zone) && !closed && covers([WINDOWS], weekday, minute))
-        outside += zone.openWindowRatePerHour * zone.volumeM3 * wind
+      if (isRoom(zone) && isOpen)
+        // the caretaker opens and shuts the roof vents with the house
+        outside += zone.roofVentRatePerHour * zone.volumeM3 * wind
       const returned = handler?.recirculating === true
       this.running[z] = on ? 1 : 0
       this.net.outdoorM3PerHour[z] = outside + (returned ? 0 : supply)
       this.net.supplyM3PerHour[z] = returned ? supply : 0
       this.outdoorTotalM3PerHour[z] = outside + supply * (handler?.outdoorFraction ?? 1)
     })
-    const isOpen = !closed && covers([this.open], weekday, minute)
     scenario.rooms.forEach((room, i) => {
       const held = story.switches.openDoor && isOpen && room.number === story.openDoor.room
       this.net.exchangeM3PerHour[i] = held ? story.openDoor.exchangeM3PerHour : room.doorLeakM3PerHour

@@ -54,7 +54,7 @@ export const airHandlers: readonly AirHandlerPlan[] = [
     name: 'Library unit',
     airSystem: 'outdoor',
     outdoorFraction: 1,
-    hours: [{ days: WEEKDAYS, from: '07:00', to: '19:00' }],
+    hours: [{ days: WEEKDAYS, from: '07:00', to: '18:00' }],
   },
 ]
 

@@ -4,7 +4,7 @@ const WEEKDAYS = [1, 2, 3, 4, 5]
 
 const defaults = {
   airSystem: null,
-  openWindowRatePerHour: 0,
+  roofVentRatePerHour: 0,
   infiltrationRatePerHour: 0.2,
   doorLeakM3PerHour: 1.5,
   singlePerson: false,
@@ -12,9 +12,9 @@ const defaults = {
 } as const
 
 const office = (staff: number) =>
-  ({ kind: 'office', staff, arrive: '08:50', leave: '17:20', metabolicRate: 1.2 }) as const
+  ({ kind: 'office', staff, arrive: '08:50', leave: '17:20', metabolicRate: 1.2, together: false }) as const
 const workshop = (staff: number) =>
-  ({ kind: 'office', staff, arrive: '08:05', leave: '16:35', metabolicRate: 1.9 }) as const
+  ({ kind: 'office', staff, arrive: '08:05', leave: '16:35', metabolicRate: 1.9, together: true }) as const
 const meetings = (from: number, to: number, perDay: number) =>
   ({ kind: 'meeting', from, to, perDay }) as const
 
@@ -37,6 +37,11 @@ const tutorialSlots: readonly Lesson[] = [
   { days: WEEKDAYS, from: '15:45', to: '16:45', chance: 0.5 },
 ]
 
+const libraryOpen = [
+  { from: '09:00', to: '12:45' },
+  { from: '13:45', to: '17:40' },
+] as const
+
 const ground = { ...defaults, floor: 'ground', airHandler: 'AH-1' } as const
 const first = { ...defaults, floor: 'first', airHandler: 'AH-2' } as const
 const second = { ...defaults, floor: 'second', airHandler: 'AH-3' } as const
@@ -50,7 +55,7 @@ export const rooms: readonly RoomPlan[] = [
   { ...ground, number: 'G.05', name: 'Weir Seminar', use: 'classroom', tenancy: 'weir', floorAreaM2: 62, volumeM3: 192, designHeadcount: 26, permittedOccupancy: 30, supplyLps: 237, activity: { kind: 'lessons', slots: seminarSlots, from: 18, to: 25, staffed: true } },
   { ...ground, number: 'G.06', name: 'Boiler Study', use: 'single office', tenancy: 'weir', floorAreaM2: 18, volumeM3: 56, designHeadcount: 1, permittedOccupancy: 3, supplyLps: 26, singlePerson: true, activity: office(1) },
   { ...ground, number: 'G.07', name: 'Sluice', use: 'single office', tenancy: 'weir', floorAreaM2: 15, volumeM3: 45, designHeadcount: 1, permittedOccupancy: 3, supplyLps: 28, singlePerson: true, activity: office(1) },
-  { ...ground, number: 'G.08', name: 'Yard Workshop', use: 'workshop', tenancy: 'cardroom', airHandler: null, airSystem: 'natural', floorAreaM2: 150, volumeM3: 600, designHeadcount: 12, permittedOccupancy: 20, supplyLps: 0, openWindowRatePerHour: 1.4, infiltrationRatePerHour: 0.4, activity: workshop(12) },
+  { ...ground, number: 'G.08', name: 'Yard Workshop', use: 'workshop', tenancy: 'cardroom', airHandler: null, airSystem: 'natural', floorAreaM2: 150, volumeM3: 600, designHeadcount: 12, permittedOccupancy: 20, supplyLps: 0, roofVentRatePerHour: 1.4, infiltrationRatePerHour: 0.4, activity: workshop(12) },
   { ...first, number: '1.01', name: 'Carding Room', use: 'open office', tenancy: 'cardroom', floorAreaM2: 260, volumeM3: 910, designHeadcount: 34, permittedOccupancy: 45, supplyLps: 504, activity: office(32) },
   { ...first, number: '1.02', name: 'Card Meeting', use: 'meeting room', tenancy: 'cardroom', floorAreaM2: 24, volumeM3: 72, designHeadcount: 6, permittedOccupancy: 16, supplyLps: 69, activity: meetings(3, 6, 4) },
   { ...first, number: '1.03', name: 'Spindle', use: 'meeting room', tenancy: 'cardroom', floorAreaM2: 28, volumeM3: 84, designHeadcount: 8, permittedOccupancy: 12, supplyLps: 107, activity: meetings(6, 9, 3) },
@@ -66,7 +71,7 @@ export const rooms: readonly RoomPlan[] = [
   { ...second, number: '2.05', name: 'Twill', use: 'meeting room', tenancy: 'skein', floorAreaM2: 30, volumeM3: 90, designHeadcount: 8, permittedOccupancy: 12, supplyLps: 119, activity: meetings(6, 10, 3) },
   { ...second, number: '2.06', name: 'Damask', use: 'tutorial room', tenancy: 'weir', floorAreaM2: 28, volumeM3: 84, designHeadcount: 8, permittedOccupancy: 10, supplyLps: 73, activity: { kind: 'lessons', slots: tutorialSlots, from: 5, to: 8, staffed: true } },
   { ...second, number: '2.07', name: 'Skein Office', use: 'office', tenancy: 'skein', airHandler: 'AH-4', floorAreaM2: 88, volumeM3: 264, designHeadcount: 11, permittedOccupancy: 14, supplyLps: 440, activity: office(11) },
-  { ...second, number: '2.08', name: 'Rafter Library', use: 'library', tenancy: 'skein', airHandler: 'AH-5', floorAreaM2: 120, volumeM3: 420, designHeadcount: 14, permittedOccupancy: 24, supplyLps: 231, activity: { kind: 'library', visitsPerDay: 42 } },
+  { ...second, number: '2.08', name: 'Rafter Library', use: 'library', tenancy: 'skein', airHandler: 'AH-5', floorAreaM2: 120, volumeM3: 420, designHeadcount: 14, permittedOccupancy: 24, supplyLps: 231, activity: { kind: 'library', visitsPerDay: 42, open: libraryOpen, circleDays: [1, 2, 3, 4] } },
 ]
 
 /** Landings join the rooms of a floor; their numbers end in .00. */

@@ -24,12 +24,26 @@ export type TenancyPlan = {
 
 /** What people do in a room; `people/` gives each kind its days. */
 export type RoomActivity =
-  | { kind: 'office'; staff: number; arrive: string; leave: string; metabolicRate: number }
+  /** `together`: a crew that starts, breaks and stops as one */
+  | {
+      kind: 'office'
+      staff: number
+      arrive: string
+      leave: string
+      metabolicRate: number
+      together: boolean
+    }
   | { kind: 'meeting'; from: number; to: number; perDay: number }
   | { kind: 'lessons'; slots: readonly Lesson[]; from: number; to: number; staffed: boolean }
   | { kind: 'canteen'; cooks: number }
   | { kind: 'reception'; staff: number; visitorsPerDay: number }
-  | { kind: 'library'; visitsPerDay: number }
+  /** readers come and go while it is open; on circle days ten to fifteen stay until the doors shut */
+  | {
+      kind: 'library'
+      visitsPerDay: number
+      open: readonly { from: string; to: string }[]
+      circleDays: readonly number[]
+    }
 
 /** A timetabled slot with the chance that it is held on one of its weekdays. */
 export type Lesson = { days: readonly number[]; from: string; to: string; chance: number }
@@ -48,8 +62,8 @@ export type RoomPlan = {
   permittedOccupancy: number
   /** outdoor air only: flow of outdoor air; recirculating: supply flow; L/s */
   supplyLps: number
-  /** natural rooms: air-change rate with the windows open in occupied hours, 1/h at a mean day's wind */
-  openWindowRatePerHour: number
+  /** natural rooms: air-change rate through roof vents, open while the house is open, 1/h at a mean day's wind */
+  roofVentRatePerHour: number
   /** air-change rate through cracks at a mean day's wind, 1/h */
   infiltrationRatePerHour: number
   /** exchange with the landing round a closed door, each direction, m³/h */
