@@ -3,7 +3,7 @@ import { quantile } from '../support/truth/summary'
 import { options, percent, printTable, wholeNumber, writeReport } from './report'
 import { analyseFilesAtLength, type FileRun } from './speed/file-run'
 import { compareFits } from './speed/fits'
-import { bulk, cpuMsOf, oneMinuteRoomDays } from './speed/room-days'
+import { bulk, cpuMsOf, oneMinuteRoomDays, refitMs } from './speed/room-days'
 
 const chosen = options({ seed: '1', 'room-days': '10000', files: '700' })
 const seed = wholeNumber('seed', chosen.seed, 0)
@@ -16,10 +16,17 @@ const days = oneMinuteRoomDays(seed, 2, 10)
 for (const day of days.slice(0, 60)) cpuMsOf(day)
 const cpuMs = days.map(cpuMsOf)
 const perRoomDay = { median: quantile(cpuMs, 0.5), p95: quantile(cpuMs, 0.95), most: Math.max(...cpuMs) }
-console.log(`\nCPU of one room-day at one-minute steps, whole analysis (${days.length} different ones)`)
+refitMs(days, 200)
+const refits = refitMs(days, 600)
+const refit = { median: quantile(refits, 0.5), p95: quantile(refits, 0.95), most: Math.max(...refits) }
+const cells = (t: typeof refit) => [t.median.toFixed(2), t.p95.toFixed(2), t.most.toFixed(2)]
+console.log(`\none-minute steps (${days.length} different room-days; CPU time, the refit by the clock)`)
 printTable(
   ['', 'median ms', '95 % ms', 'most ms'],
-  [['one room-day', perRoomDay.median.toFixed(2), perRoomDay.p95.toFixed(2), perRoomDay.most.toFixed(2)]],
+  [
+    ['one room-day, whole analysis', ...cells(perRoomDay)],
+    ['one refit of a dragged window', ...cells(refit)],
+  ],
 )
 
 globalThis.gc?.()

@@ -1,4 +1,5 @@
 import { analyseBuildingDay, type BuildingDay } from '@/lib/air/analyse-building'
+import { refitDecay } from '@/lib/air/decay/refit'
 import type { Series } from '@/lib/air/types'
 import { makeBuilding, type TruthRoom } from '../../support/truth/building'
 import { addDays, localTimeS } from '../../support/truth/calendar'
@@ -78,4 +79,18 @@ export function bulk(days: readonly BuildingDay[], roomDays: number): Bulk {
     decays,
     peakMb: peak / 1024 ** 2,
   }
+}
+
+/** Milliseconds of each refit while a hand drags a window's start and end over an evening's record of 38 hours. */
+export function refitMs(days: readonly BuildingDay[], drags: number): number[] {
+  const times: number[] = []
+  for (let i = 0; i < drags; i++) {
+    const day = days[i % days.length]!
+    const fromS = day.dayStartS + 17.5 * 3600 + (i % 40) * 60
+    const toS = fromS + (1 + (i % 7) / 2) * 3600
+    const startMs = performance.now()
+    refitDecay({ series: day.rooms[0]!.series, fromS, toS, background: null })
+    times.push(performance.now() - startMs)
+  }
+  return times
 }
