@@ -49,6 +49,7 @@ function collectFloors(file: RoomsFile, spill: Spill): QuietFloor[][] {
 export function analyseDays(file: RoomsFile, spill: Spill, hasOutdoor: boolean): string[] {
   const floors = collectFloors(file, spill)
   const lines: string[][] = file.rooms.map(() => [])
+  const demands: number[][] = file.rooms.map(() => [])
   const rates: number[][] = file.rooms.map(() => [])
   const stops = new Map<string, Stops>()
   for (const day of localDays(spill, file.timeZone)) {
@@ -74,6 +75,7 @@ export function analyseDays(file: RoomsFile, spill: Spill, hasOutdoor: boolean):
     result.forEach((roomDay, index) => {
       for (const decay of roomDay.decays) lines[index]!.push(JSON.stringify(decayRecord(decay)))
       rates[index]!.push(...sureRates(roomDay))
+      demands[index]!.push(roomDay.decays.filter((decay) => decay.kind === 'range').length)
       const handler = file.rooms[index]!.airHandler
       if (handler === undefined) return
       const kept = stops.get(handler) ?? []

@@ -3,14 +3,21 @@
  * `analyse` and the tests all call this; it reads no clock, no file and no database.
  */
 import { PEOPLE } from './constants'
-import { estimateBackground, outdoorLevel } from './decay/background'
+import { outdoorLevel } from './decay/background'
 import { cleanRecord } from './decay/clean'
-import { type Fall, findFalls, levelTrack, type Track } from './decay/falls'
-import { lowestLevel, type QuietFloor, restingLevels } from './decay/floor'
+import { findFalls, levelTrack } from './decay/falls'
+import type { QuietFloor } from './decay/floor'
 import { modeOf, type RateDrop, type SupplyStop, sharedStops } from './decay/modes'
 import { decayOf, refusedDecay } from './decay/outcome'
 import { peopleProbability, rateEvidence, shapeEvidence } from './decay/people'
-import { type FallReading, readFall } from './decay/read-fall'
+import {
+  type DayWindow,
+  nightsFloor,
+  openRecord,
+  type ReadFall,
+  type RoomRecord,
+  readFalls,
+} from './decay/room-record'
 import type { Reading } from './decay/run'
 import type { Background, Decay, RoomSpec, Series, SupplyChange } from './types'
 
@@ -19,6 +26,8 @@ export type RoomHistory = {
   quietFloors: readonly QuietFloor[]
   /** sure rates of this room from the last nights, 1/h */
   recentRates?: readonly number[]
+  /** decays of the last nights that showed demand control */
+  demandControlled?: number
   /** earlier nights on which this room's air handler was seen to stop, seconds after local midnight */
   supplyStops?: readonly { date: string; clockS: number; to: SupplyStop['to'] }[]
 }
@@ -59,57 +68,29 @@ export type RoomDay = {
   notes: RoomNote[]
 }
 
-type Prepared = {
-  input: BuildingRoom
-  record: ReturnType<typeof cleanRecord>
-  floor: QuietFloor | null
-  falls: { reading: FallReading | null; background: Background; fall: ReturnType<typeof findFalls>[number] }[]
-}
-
-type Window = { date: string; dayStartS: number; dayEndS: number }
-
-/** What the night from local noon to noon left: the resting level nearest to the evening, else the lowest level seen. */
-function nightsFloor(track: Track, falls: readonly Fall[], day: Window): QuietFloor | null {
-  const fromS = day.dayStartS + 43_200
-  const toS = day.dayEndS + 43_200
-  const lowest = lowestLevel(track, fromS, toS, day.date)
-  const resting = restingLevels(track, falls, lowest, day.date).filter(
-    (floor) => floor.atS >= fromS && floor.atS <= toS,
-  )
-  return resting[0] ?? lowest
-}
+type Prepared = { input: BuildingRoom; opened: RoomRecord; falls: ReadFall[] }
 
 /** The floor that one night leaves in history. */
-export function nightFloor(input: Pick<BuildingRoom, 'room' | 'series'>, day: Window): QuietFloor | null {
+export function nightFloor(input: Pick<BuildingRoom, 'room' | 'series'>, day: DayWindow): QuietFloor | null {
   const record = cleanRecord(input.series, input.room.sensor)
   const track = levelTrack(record, day.dayStartS + 43_200, day.dayEndS + 43_200)
   return nightsFloor(track, findFalls(track), day)
 }
 
-function prepare(
-  day: BuildingDay,
-  input: BuildingRoom,
-  outdoor: ReturnType<typeof outdoorLevel> | undefined,
-): Prepared {
-  const record = cleanRecord(input.series, input.room.sensor)
-  const fromS = day.dayStartS - 7200
-  const toS = day.dayEndS + 43_200
-  const track = levelTrack(record, fromS, toS)
-  const all = findFalls(track)
-  const lowest = lowestLevel(track, fromS, toS, day.date)
-  const history = (input.history?.quietFloors ?? []).filter((entry) => entry.date !== day.date)
-  const own = restingLevels(track, all, lowest, day.date, history)
-  const nightsLow = Math.min(...history.map((entry) => entry.ppm))
-  if (lowest?.reached && own.length === 0 && lowest.ppm < nightsLow + 60) own.push(lowest)
-  const falls = all
-    .filter((fall) => fall.toS > day.dayStartS && fall.fromS < day.dayEndS)
-    .map((fall) => {
-      const atS = fall.fromS + Math.min(5400, (fall.toS - fall.fromS) / 2)
-      const { defaultOutdoor } = day
-      const background = estimateBackground({ own, lowest, history, outdoor, atS, defaultOutdoor })
-      return { fall, background, reading: readFall(record, fall, background) }
-    })
-  return { input, record, floor: nightsFloor(track, all, day), falls }
+function prepareAll(day: BuildingDay): Prepared[] {
+  const outdoorRecord = day.outdoor && day.outdoor.timeS.length > 3 ? cleanRecord(day.outdoor) : null
+  const outdoor = outdoorRecord
+    ? outdoorLevel(levelTrack(outdoorRecord, day.dayStartS - 7200, day.dayEndS + 43_200))
+    : undefined
+  const opened = day.rooms.map(({ room, series, history }) =>
+    openRecord(room, series, day, history?.quietFloors),
+  )
+  const byId = new Map(day.rooms.map(({ room }, i) => [room.id, opened[i]!]))
+  return day.rooms.map((input, i) => {
+    const neighbour = input.room.neighbour === undefined ? undefined : byId.get(input.room.neighbour)
+    const around = { outdoor, defaultOutdoor: day.defaultOutdoor, neighbour }
+    return { input, opened: opened[i]!, falls: readFalls(opened[i]!, day, around) }
+  })
 }
 
 /** The rates of a finished day that later nights may lean on: accepted, and long enough to be sure. */
@@ -143,11 +124,7 @@ function dropsOf(prepared: readonly Prepared[]): RateDrop[] {
 
 /** Analyses every room of a building for one local date. Never throws for bad readings: those lead to refused decays with reasons. */
 export function analyseBuildingDay(day: BuildingDay): RoomDay[] {
-  const outdoorRecord = day.outdoor && day.outdoor.timeS.length > 3 ? cleanRecord(day.outdoor) : null
-  const outdoor = outdoorRecord
-    ? outdoorLevel(levelTrack(outdoorRecord, day.dayStartS - 7200, day.dayEndS + 12 * 3600))
-    : undefined
-  const prepared = day.rooms.map((input) => prepare(day, input, outdoor))
+  const prepared = prepareAll(day)
   const stops = new Map<string, SupplyStop[]>()
   for (const handler of new Set(
     day.rooms.map(({ room }) => room.airHandler).filter((name) => name !== undefined),
@@ -160,7 +137,6 @@ export function analyseBuildingDay(day: BuildingDay): RoomDay[] {
   return prepared.map((room) => finish(day, room, stops.get(room.input.room.airHandler ?? '') ?? []))
 }
 
-type ReadFall = Prepared['falls'][number]
 type Weighed = { entry: Reading; room: ReadFall; evidence: number; before: number }
 
 /** Weighs for every reading whether the room was empty; rates that are sure help to judge the others. */
@@ -187,12 +163,14 @@ function weighPeople({ input, falls }: Prepared): Weighed[] {
 }
 
 function finish(day: BuildingDay, prepared: Prepared, stops: SupplyStop[]): RoomDay {
-  const { input, record, floor, falls } = prepared
+  const { input, opened, falls } = prepared
   const notes: RoomNote[] = []
   const decays: Decay[] = []
   let used: Background | null = null
   const weighed = weighPeople(prepared)
-  for (const { reading, background, fall } of falls) {
+  const demandToday = weighed.filter(({ entry }) => entry.demand).length
+  const demandRoom = demandToday + (input.history?.demandControlled ?? 0) >= 2
+  for (const { reading, background, fall, record } of falls) {
     used ??= background
     const own = reading?.readings ?? []
     if (own.length === 0)
@@ -202,11 +180,21 @@ function finish(day: BuildingDay, prepared: Prepared, stops: SupplyStop[]): Room
       const mode = modeOf(input.room, entry, { supply: input.supply, stops, timeZone: day.timeZone })
       if (mode.disagrees) noteEarlyStop(notes, stops)
       decays.push(
-        decayOf({ day, room: input.room, entry, reading: reading!, background, record, mode, people }),
+        decayOf({
+          day,
+          room: input.room,
+          entry,
+          reading: reading!,
+          background,
+          record,
+          mode,
+          people,
+          demandRoom,
+        }),
       )
     }
   }
-  for (const cut of record.stuck) {
+  for (const cut of opened.record.stuck) {
     notes.push({ code: 'sensor-stuck', text: 'The sensor repeated one value for too long.', atS: cut.fromS })
   }
   const inDay = decays.filter((decay) => decay.startS >= day.dayStartS && decay.startS < day.dayEndS)
@@ -216,7 +204,7 @@ function finish(day: BuildingDay, prepared: Prepared, stops: SupplyStop[]): Room
     sensorId: input.sensorId,
     decays: inDay,
     background: used,
-    quietFloor: floor,
+    quietFloor: nightsFloor(opened.track, opened.falls, day),
     supplyStops: stops,
     notes,
   }

@@ -61,6 +61,7 @@ export const BACKGROUND = {
   wanderS: 6 * 3600,
   otherNightPpm: 12,
   driftPpmPerHour: 5,
+  zeroDriftPpmPerHour: 1,
   sensorOffsetPpm: 18,
   leastPpm: 5,
 } as const

@@ -23,7 +23,7 @@ export type FiguresAndMoments = {
  */
 export function figuresOf(test: NormalisedTest, rateFactor = 1): FiguresAndMoments {
   const momentsOf = (curve: NonNullable<NormalisedTest['exhaust']>) =>
-    curveMoments(curve, test.backgroundDoubt, rateFactor)
+    curveMoments(curve, test.floorDoubt, rateFactor)
   const exhaust = test.exhaust ? momentsOf(test.exhaust) : null
   const points = Object.fromEntries(
     Object.entries(test.points).map(([name, curve]) => [name, momentsOf(curve)]),

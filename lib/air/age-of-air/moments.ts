@@ -118,6 +118,9 @@ const LEAST_SHARE = 0.002
 /** Doubt of the tail's rate that is always there (engineering choice: the last fold is never quite the slowest mode). */
 const LEAST_RATE_DOUBT = 0.03
 
+/** A later half whose own rate is noisier than this, relative, is not preferred to the whole window. */
+const MOST_RATE_ERROR = 0.15
+
 /** Index of the last sample worth integrating: where the smoothed record sinks into noise or background doubt. */
 function lastUseful(curve: Curve, floor: number): number {
   for (let i = 1; i < curve.share.length; i++) if (smoothed(curve.share, i) < floor) return i
@@ -147,7 +150,8 @@ function fitTail(curve: Curve, last: number, floor: number): Tail | null {
     const late = fitPart(middle, last)
     if (!late || !early) break
     const noise = curve.noise * Math.hypot(early.rateGain, late.rateGain)
-    if (Math.abs(early.rate - late.rate) <= Math.max(3 * noise, 0.01 * late.rate)) break
+    if (Math.abs(early.rate - late.rate) <= Math.max(4 * noise, 0.01 * late.rate)) break
+    if (curve.noise * late.rateGain > MOST_RATE_ERROR * late.rate) break
     first = middle
     fit = late
   }
@@ -160,12 +164,12 @@ function fitTail(curve: Curve, last: number, floor: number): Tail | null {
 /**
  * Moments of one curve with an exponential tail: adds C_N/λ to μ0 and C_N (t_N/λ + 1/λ²) to μ1. The record is read only down to where
  * noise or the background's doubt rules it.
- * @param backgroundDoubt standard uncertainty of F from the background
+ * @param floorDoubt standard uncertainty of F near zero, from the background (and the final level of a step-up)
  * @param rateFactor multiplies the tail's rate, to learn what its doubt does
  * @source Roulet, Ventilation and Airflow in Buildings, ch. 3; tail formulas derived
  */
-export function curveMoments(curve: Curve, backgroundDoubt: number, rateFactor = 1): CurveMoments {
-  const floor = Math.max(LEAST_SHARE, 3 * curve.noise, 4 * backgroundDoubt)
+export function curveMoments(curve: Curve, floorDoubt: number, rateFactor = 1): CurveMoments {
+  const floor = Math.max(LEAST_SHARE, 3 * curve.noise, 4 * floorDoubt)
   const last = lastUseful(curve, floor)
   const { mu0, mu1, jumpDoubt } = integrate(curve, last)
   const none = { tail: null, tailMu0: 0, tailMu1: 0, jumpDoubt }

@@ -11,6 +11,8 @@ export type NormalisedTest = {
   stepDoubt: number
   /** standard uncertainty of a share from the background */
   backgroundDoubt: number
+  /** standard uncertainty of a share near zero: the background's in a decay, with the final level's in a step-up */
+  floorDoubt: number
   warnings: Set<TracerWarning>
 }
 
@@ -123,12 +125,15 @@ export function normaliseTest(test: TracerTest, override: Override = {}): Normal
     warnings.add('non-uniform-start')
   }
   const backgroundSd = backgroundUncertainty(test, records, plainStep)
+  const stepDoubt = Math.abs(level.standardUncertainty / plainStep)
+  const backgroundDoubt = backgroundSd / Math.abs(plainStep)
   return {
     exhaust: exhaustCurve,
     points: Object.fromEntries(names.map((name, i) => [name, curves[i]!])),
     step,
-    stepDoubt: Math.abs(level.standardUncertainty / plainStep),
-    backgroundDoubt: backgroundSd / Math.abs(plainStep),
+    stepDoubt,
+    backgroundDoubt,
+    floorDoubt: test.kind === 'decay' ? backgroundDoubt : Math.hypot(backgroundDoubt, stepDoubt),
     warnings,
   }
 }

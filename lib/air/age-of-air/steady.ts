@@ -63,7 +63,7 @@ function fitWindow(records: readonly (readonly Sample[])[], fromS: number, endS:
 }
 
 /** Starts of the late part, as shares of the record's length: the earliest that an exponential describes to within noise is used. */
-const LATE_STARTS = [0.45, 0.65]
+const LATE_STARTS = [0.45, 0.65, 0.8]
 const LEAST_SAMPLES = 8
 
 /**

@@ -18,6 +18,8 @@ export type DemandFit = {
   startLowPerHour: number
   startHighPerHour: number
   backgroundPpm: number
+  /** rate after so many hours */
+  rateAfter: (hours: number) => number
 }
 
 /** Excess after t hours under demand control; `extraRate` is k E0, all rates 1/h. */
@@ -85,5 +87,6 @@ function describeDemand(
     startLowPerHour: startRate * Math.exp(-half),
     startHighPerHour: startRate * Math.exp(half),
     backgroundPpm: prior.ppm + shift,
+    rateAfter: (t) => base + (extra * demandExcess(t, start, base, extra)) / start,
   }
 }

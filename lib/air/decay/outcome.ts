@@ -82,12 +82,19 @@ export type Outcome = {
   mode: Moded
   /** probability that somebody was inside */
   people: number
+  /** other decays of this room show demand control */
+  demandRoom: boolean
 }
 
-function suspicionOf({ room, people }: Outcome): Suspicion {
+/** Spread of a neighbour's share up to which the total rate is accepted. */
+const SURE_SHARE = 0.25
+
+function suspicionOf({ room, people, entry, demandRoom }: Outcome): Suspicion {
   const doubts: Reason[] = []
   const refusals: Reason[] = []
   if (room.air === 'recirculating') doubts.push('recirculation-possible')
+  if (demandRoom && !entry.demand) doubts.push('demand-controlled')
+  if (entry.coupled && entry.coupled.shareSd > SURE_SHARE) doubts.push('neighbour-coupled')
   if (people > PEOPLE.refused) refusals.push('people-present')
   else if (people > PEOPLE.doubtful) doubts.push('people-present')
   return { doubts, refusals }
@@ -102,6 +109,7 @@ export function decayOf(outcome: Outcome): Decay {
   const rate = given && (verdict.kind === 'fit' || verdict.kind === 'range') ? estimate.ratePerHour : null
   const reasons = [...verdict.reasons]
   if (given && (room.air === undefined || room.air === 'unknown')) reasons.push('recirculation-possible')
+  if (given && entry.coupled && !reasons.includes('neighbour-coupled')) reasons.push('neighbour-coupled')
   const change = entry.changeAtEnd ?? entry.changeAtStart
   const recirculates = given && room.air === 'recirculating'
   const decay = {
@@ -113,8 +121,7 @@ export function decayOf(outcome: Outcome): Decay {
     airChangeRatePerHour: rate,
     airChangeRateLowPerHour: given && verdict.kind !== 'at-most' ? estimate.lowPerHour : null,
     airChangeRateHighPerHour: given && verdict.kind !== 'at-least' ? estimate.highPerHour : null,
-    outdoorRateLowPerHour: recirculates ? 0 : null,
-    outdoorRateHighPerHour: recirculates ? estimate.highPerHour : null,
+    ...outdoorRange(entry, verdict.quality, recirculates),
     background: {
       ppm: entry.fit.backgroundPpm,
       standardUncertaintyPpm: backgroundSd(entry),
@@ -139,6 +146,19 @@ export function decayOf(outcome: Outcome): Decay {
     checks: verdict.checks,
   }
   return { ...decay, sentence: explainDecay(decay) }
+}
+
+/** What comes from outdoors: from the fit with a neighbour where it is sure, else anything up to the whole. */
+function outdoorRange(entry: Reading, quality: Decay['quality'], recirculates: boolean) {
+  const { coupled, estimate } = entry
+  if (quality === 'refused' || !(coupled || recirculates))
+    return { outdoorRateLowPerHour: null, outdoorRateHighPerHour: null }
+  if (!coupled || quality === 'doubtful')
+    return { outdoorRateLowPerHour: 0, outdoorRateHighPerHour: estimate.highPerHour }
+  return {
+    outdoorRateLowPerHour: coupled.outdoorLowPerHour,
+    outdoorRateHighPerHour: coupled.outdoorHighPerHour,
+  }
 }
 
 function backgroundSd(entry: Reading): number {

@@ -7,7 +7,7 @@ import type { CleanRecord } from './clean'
 import type { Fall } from './falls'
 import { withMixing } from './noise'
 import { assignRoles, emptyRuns, type Piece, piecesOf } from './pieces'
-import type { Binned, Prior } from './piecewise'
+import { type Binned, type Prior, roughStart } from './piecewise'
 import { type Reading, readRun } from './run'
 import { segmentFall } from './segments'
 
@@ -37,17 +37,31 @@ export function usefulEnd(record: CleanRecord, fall: Fall, background: Backgroun
   return Math.min(fall.toS, fall.fromS + 14 * 3600)
 }
 
+/** A fall's readings in bins, with the noise that mixing brings, from its start (the origin of time) to `toS`. */
+export function fallBins(record: CleanRecord, fall: Fall, toS: number, background: Background): Binned {
+  const width = Math.max(record.stepS, (toS - fall.fromS) / DETECTION.fitBins)
+  return withMixing(binRecord(record, fall.fromS, toS, width, fall.fromS), background.ppm, width)
+}
+
+/**
+ * How fast the floor of a decay may move: a slow room follows outdoor air only slowly, so that its floor hardly moves while it ebbs; what is left
+ * is the sensor's own zero.
+ */
+function driftFor(data: Binned, backgroundPpm: number): number {
+  const rate = roughStart(data, backgroundPpm).ratesPerHour[0]!
+  return Math.hypot(BACKGROUND.zeroDriftPpmPerHour, (BACKGROUND.driftPpmPerHour * rate) / (rate + 0.35))
+}
+
 /** Reads one fall with a background. Null when it holds too few readings to say anything. */
 export function readFall(record: CleanRecord, fall: Fall, background: Background): FallReading | null {
   const toS = usefulEnd(record, fall, background)
   const width = Math.max(record.stepS, (toS - fall.fromS) / DETECTION.fitBins)
-  const raw = binRecord(record, fall.fromS, toS, width, fall.fromS)
-  if (raw.timeH.length < 4) return null
-  const data = withMixing(raw, background.ppm, width)
+  const data = fallBins(record, fall, toS, background)
+  if (data.timeH.length < 4) return null
   const prior = {
     ppm: background.ppm,
     sdPpm: background.standardUncertaintyPpm,
-    driftSdPpmPerHour: BACKGROUND.driftPpmPerHour,
+    driftSdPpmPerHour: driftFor(data, background.ppm),
   }
   const leastH = Math.max((2.5 * width) / 3600, 0.06)
   const segmented = segmentFall(data, prior, leastH)

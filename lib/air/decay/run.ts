@@ -1,5 +1,6 @@
 /** One run of an empty room fitted: its ends trimmed, every piece its own rate, one background. */
 import { sliceBins } from './bins'
+import type { CoupledFit } from './coupled'
 import { type DemandFit, fitDemand } from './demand'
 import { type RateEstimate, rateEstimate, residualSd, reweighed } from './interval'
 import { longRunScale } from './noise'
@@ -33,6 +34,8 @@ export type Reading = {
   data: Binned
   /** set when the rate follows CO2: the figure is then the rate at the occupied end */
   demand: DemandFit | null
+  /** set when a measured neighbour's air was taken into account */
+  coupled?: CoupledFit
   /** seconds; the rate changed at this window's end (or start) */
   changeAtEnd: { atS: number; lowS: number; highS: number } | null
   changeAtStart: { atS: number; lowS: number; highS: number } | null
@@ -171,6 +174,14 @@ function demandOf(part: Binned, prior: Prior, steps: PiecewiseFit): DemandFit | 
   return demand.chiSquared < steps.chiSquared + (spare + DEMAND_MARGIN) * variance ? demand : null
 }
 
+/** Until when the rate is still near that of the occupied end: it has fallen to six tenths, at least ten minutes on. */
+function occupiedEnd(demand: DemandFit, fromH: number, toH: number): number {
+  for (let t = 0.02; fromH + t < toH; t += 0.02) {
+    if (demand.rateAfter(t) < 0.6 * demand.startRatePerHour) return fromH + Math.max(t, 1 / 6)
+  }
+  return toH
+}
+
 function demandReading(
   run: Run,
   part: Binned,
@@ -191,9 +202,7 @@ function demandReading(
   }
   return {
     fromS: originS + fromH * 3600,
-    toS:
-      originS +
-      usedUntil({ ...piece, ratePerHour: (demand.startRatePerHour + demand.endRatePerHour) / 2 }) * 3600,
+    toS: originS + occupiedEnd(demand, fromH, toH) * 3600,
     piece,
     index: 0,
     estimate: {

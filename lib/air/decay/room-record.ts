@@ -1,0 +1,144 @@
+/** One room's record of a day opened for reading: cleaned, its falls found, its backgrounds known; and every fall read. */
+import { BACKGROUND } from '@/lib/air/constants'
+import type { Background, RoomSpec, Series } from '@/lib/air/types'
+import { type BackgroundInputs, estimateBackground, type OutdoorLevel } from './background'
+import { sliceBins } from './bins'
+import { type CleanRecord, cleanRecord } from './clean'
+import { decoupledRecord, fitCoupled, type Neighbour } from './coupled'
+import { type Fall, findFalls, levelTrack, type Track } from './falls'
+import { lowestLevel, type QuietFloor, restingLevels } from './floor'
+import { type FallReading, fallBins, readFall } from './read-fall'
+
+export type DayWindow = { date: string; dayStartS: number; dayEndS: number }
+
+export type RoomRecord = {
+  record: CleanRecord
+  track: Track
+  falls: Fall[]
+  lowest: QuietFloor | null
+  own: QuietFloor[]
+  history: readonly QuietFloor[]
+}
+
+export type ReadFall = {
+  fall: Fall
+  reading: FallReading | null
+  background: Background
+  record: CleanRecord
+}
+
+/** Other nights' floors may lie this much below before a resting level is taken for an occupied one, ppm. */
+const ABOVE_OTHER_NIGHTS_PPM = 60
+
+/** What the night from local noon to noon left: the first resting level after the evening, else the lowest level seen. */
+export function nightsFloor(track: Track, falls: readonly Fall[], day: DayWindow): QuietFloor | null {
+  const fromS = day.dayStartS + 43_200
+  const toS = day.dayEndS + 43_200
+  const lowest = lowestLevel(track, fromS, toS, day.date)
+  const resting = restingLevels(track, falls, lowest, day.date)
+  return resting.find((floor) => floor.atS >= fromS && floor.atS <= toS) ?? lowest
+}
+
+/** Opens a room's record for a day; `history` holds the floors of other nights. */
+export function openRecord(
+  room: RoomSpec,
+  series: Series,
+  day: DayWindow,
+  nights: readonly QuietFloor[] = [],
+): RoomRecord {
+  const record = cleanRecord(series, room.sensor)
+  const fromS = day.dayStartS - 7200
+  const toS = day.dayEndS + 43_200
+  const track = levelTrack(record, fromS, toS)
+  const falls = findFalls(track)
+  const lowest = lowestLevel(track, fromS, toS, day.date)
+  const history = nights.filter((entry) => entry.date !== day.date)
+  const own = restingLevels(track, falls, lowest, day.date, history)
+  const nightsLow = Math.min(...history.map((entry) => entry.ppm))
+  if (lowest?.reached && own.length === 0 && lowest.ppm < nightsLow + ABOVE_OTHER_NIGHTS_PPM) own.push(lowest)
+  return { record, track, falls, lowest, own, history }
+}
+
+export type Surroundings = {
+  outdoor?: OutdoorLevel
+  defaultOutdoor?: BackgroundInputs['defaultOutdoor']
+  /** the record of the room whose air reaches this one */
+  neighbour?: RoomRecord
+}
+
+/** The background of an opened record at an instant. */
+export function backgroundFor(opened: RoomRecord, atS: number, around: Surroundings): Background {
+  const { own, lowest, history } = opened
+  return estimateBackground({
+    own,
+    lowest,
+    history,
+    atS,
+    outdoor: around.outdoor,
+    defaultOutdoor: around.defaultOutdoor,
+  })
+}
+
+/** Reads every fall that reaches into the day. */
+export function readFalls(opened: RoomRecord, day: DayWindow, around: Surroundings): ReadFall[] {
+  return opened.falls
+    .filter((fall) => fall.toS > day.dayStartS && fall.fromS < day.dayEndS)
+    .map((fall) => {
+      const atS = fall.fromS + Math.min(5400, (fall.toS - fall.fromS) / 2)
+      const background = backgroundFor(opened, atS, around)
+      if (around.neighbour) {
+        const coupled = readCoupled(opened, fall, background, around, atS)
+        if (coupled) return coupled
+      }
+      const { record } = opened
+      return { fall, background, record, reading: readFall(record, fall, background) }
+    })
+}
+
+/** Takes out what the neighbour brought, reads the rest like any fall, then fits both together in each window found. */
+function readCoupled(
+  opened: RoomRecord,
+  fall: Fall,
+  background: Background,
+  around: Surroundings,
+  atS: number,
+): ReadFall | null {
+  const next = around.neighbour!
+  const zero = backgroundFor(next, atS, { outdoor: around.outdoor, defaultOutdoor: around.defaultOutdoor })
+  const neighbour: Neighbour = {
+    track: next.track,
+    backgroundPpm: zero.ppm,
+    sdPpm: zero.standardUncertaintyPpm,
+  }
+  const prior = {
+    ppm: background.ppm,
+    sdPpm: background.standardUncertaintyPpm,
+    driftSdPpmPerHour: BACKGROUND.driftPpmPerHour,
+  }
+  const bins = fallBins(opened.record, fall, fall.toS, background)
+  const late = sliceBins(bins, 0.1, 8)
+  const first = fitCoupled(late, neighbour, prior, fall.fromS, { fit: null, ratePerHour: 1 })
+  if (!first) return null
+  const record = decoupledRecord(opened.record, neighbour, fall.fromS, fall.toS, first)
+  const reading = readFall(record, fall, background)
+  if (!reading) return null
+  const readings = reading.readings.map((own) => {
+    const fromH = (own.fromS - fall.fromS) / 3600
+    const part = sliceBins(bins, fromH, fromH + Math.max(own.toS - own.fromS, 5400) / 3600)
+    const inside = part.timeH[part.timeH.length - 1]! * 3600 + fall.fromS <= fall.toS ? part : bins
+    const joint = fitCoupled(inside, neighbour, prior, fall.fromS, {
+      fit: own.fit,
+      ratePerHour: first.ratePerHour,
+    })
+    if (!joint) return own
+    const { ratePerHour, lowPerHour, highPerHour } = joint
+    const estimate = { ...own.estimate, ratePerHour, lowPerHour, highPerHour }
+    return { ...own, piece: { ...own.piece, ratePerHour }, estimate, demand: null, coupled: joint }
+  })
+  return {
+    fall,
+    background: { ...background, origin: 'neighbour' },
+    record,
+    reading: { ...reading, readings },
+  }
+}
