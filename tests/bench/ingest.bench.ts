@@ -2,15 +2,15 @@ import { spawn } from 'node:child_process'
 import { cpus } from 'node:os'
 import path from 'node:path'
 import pg from 'pg'
-import { openDatabase } from '@/db/client'
+import { type Database, openDatabase } from '@/db/client'
 import { migrateDatabase } from '@/db/migrate'
 import { makeSite, rows, startBroker, type TestSensor } from '../support/broker'
 import { startThrowAwayCluster } from '../support/cluster'
 import { type Usage, usageOf } from './ingest/processes'
-import { rawInserts } from './ingest/raw'
+import { type Raw, rawInserts } from './ingest/raw'
 import { options, printTable, wholeNumber, writeReport } from './report'
 
-const chosen = options({ seconds: '8', connections: '50', window: '200' })
+const chosen = options({ seconds: '8', connections: '50', window: '64' })
 const seconds = wholeNumber('seconds', chosen.seconds, 1)
 const connections = wholeNumber('connections', chosen.connections, 1)
 const window = wholeNumber('window', chosen.window, 1)
@@ -29,41 +29,53 @@ type Run = {
 const cluster = await startThrowAwayCluster()
 const ownerUrl = `postgres://ebbmark_owner@127.0.0.1:${cluster.port}/ebbmark`
 const appUrl = `postgres://ebbmark_app@127.0.0.1:${cluster.port}/ebbmark`
-await migrateDatabase(ownerUrl, new Date())
-await makeDurable()
-const database = openDatabase({ url: appUrl, poolSize: 2 })
-const site = await makeSite(database, 'bench')
-const sensors: TestSensor[] = []
-for (let index = 0; index < connections; index++) sensors.push(await site.addSensor(`bench-${index}`))
+try {
+  await bench()
+} finally {
+  await cluster.remove()
+}
 
-console.log(
-  `${cpus().length} × ${cpus()[0]?.model ?? 'unknown processor'}, Node ${process.version}, PostgreSQL with fsync on.`,
-)
-console.log(
-  `${connections} connections, at most ${window} messages each unacknowledged (arrays: 4); ${seconds} s after 2 s of warm-up.`,
-)
-console.log(
-  'Load generator, broker and PostgreSQL share the cores. The rate limit of one sensor is lifted.\n',
-)
-const runs = [await measure('single readings', 1, window), await measure('arrays of 50', 50, 4)]
-const raw = await rawInserts({
-  url: appUrl,
-  seconds: Math.min(4, seconds),
-  sensorIds: sensors.map((sensor) => sensor.id),
-  baseMs: Date.now() - 20 * 86_400_000,
-})
-print()
-writeReport('ingest', {
-  node: process.version,
-  cores: cpus().length,
-  connections,
-  window,
-  seconds,
-  runs,
-  raw,
-})
-await database.close()
-await cluster.remove()
+async function bench(): Promise<void> {
+  await migrateDatabase(ownerUrl, new Date())
+  await makeDurable()
+  const database = openDatabase({ url: appUrl, poolSize: 2 })
+  const site = await makeSite(database, 'bench')
+  const sensors: TestSensor[] = []
+  for (let index = 0; index < connections; index++) sensors.push(await site.addSensor(`bench-${index}`))
+  console.log(
+    `${cpus().length} × ${cpus()[0]?.model ?? 'unknown processor'}, Node ${process.version}, PostgreSQL with fsync on.`,
+  )
+  console.log(
+    `${connections} connections, at most ${window} messages each unacknowledged (arrays: 4); ${seconds} s after 2 s of warm-up.`,
+  )
+  console.log(
+    'Load generator, broker and PostgreSQL share the cores. The rate limit of one sensor is lifted.\n',
+  )
+  const runs: Run[] = []
+  for (const [name, perMessage, most] of [
+    ['single readings', 1, window],
+    ['arrays of 50', 50, 4],
+  ] as const)
+    runs.push(await measure({ name, perMessage, most, database, sensors }))
+  const raw = await rawInserts({
+    url: appUrl,
+    superuserUrl: `postgres://postgres@127.0.0.1:${cluster.port}/ebbmark`,
+    seconds: Math.min(4, seconds),
+    sensorIds: sensors.map((sensor) => sensor.id),
+    baseMs: Date.now() - 20 * 86_400_000,
+  })
+  print(runs, raw)
+  writeReport('ingest', {
+    node: process.version,
+    cores: cpus().length,
+    connections,
+    window,
+    seconds,
+    runs,
+    raw,
+  })
+  await database.close()
+}
 
 /** The throw-away cluster is careless about a power cut; what is measured here must not be. */
 async function makeDurable(): Promise<void> {
@@ -75,13 +87,19 @@ async function makeDurable(): Promise<void> {
   await client.end()
 }
 
-async function countReadings(): Promise<number> {
+async function countReadings(database: Database): Promise<number> {
   const [row] = await rows<{ count: number }>(database, 'SELECT count(*)::int AS count FROM readings')
   return row!.count
 }
 
-async function measure(name: string, perMessage: number, most: number): Promise<Run> {
-  await rows(database, 'TRUNCATE latest_readings').catch(() => undefined)
+async function measure(plan: {
+  name: string
+  perMessage: number
+  most: number
+  database: Database
+  sensors: readonly TestSensor[]
+}): Promise<Run> {
+  const { name, perMessage, most, database, sensors } = plan
   const broker = await startBroker({
     appUrl,
     env: { MQTT_SENSOR_READINGS_PER_S: '1000000', LOG_LEVEL: 'warn' },
@@ -89,7 +107,7 @@ async function measure(name: string, perMessage: number, most: number): Promise<
   const devices = sensors.map(({ deviceId, secret, topic }) => ({ deviceId, secret, topic }))
   const baseMs = Date.now() - (perMessage === 1 ? 1_500_000 : 1_200_000)
   const words = JSON.stringify({ port: broker.port, devices, window: most, perMessage, seconds, baseMs })
-  const before = await countReadings()
+  const before = await countReadings(database)
   const child = spawn(process.execPath, [path.resolve('tests/bench/ingest/generator.mjs'), words], {
     stdio: ['ignore', 'inherit', 'inherit', 'ipc'],
   })
@@ -109,7 +127,7 @@ async function measure(name: string, perMessage: number, most: number): Promise<
   })
   await new Promise((resolve) => child.once('exit', resolve))
   await broker.end('SIGTERM')
-  const stored = (await countReadings()) - before
+  const stored = (await countReadings(database)) - before
   const { answer, end } = said
   if (stored < answer.messages * perMessage)
     throw new Error(`${answer.messages * perMessage} readings acknowledged, ${stored} stored`)
@@ -129,7 +147,7 @@ async function measure(name: string, perMessage: number, most: number): Promise<
   }
 }
 
-function print(): void {
+function print(runs: readonly Run[], raw: readonly Raw[]): void {
   const part = (usage: Usage) => `${(usage.cpuS * 100).toFixed(0)} % ${usage.memoryMb.toFixed(0)} MB`
   console.log('MQTT QoS 1 to committed rows, acknowledged after the commit')
   printTable(

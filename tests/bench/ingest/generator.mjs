@@ -20,7 +20,6 @@ const packet = (first, body) => {
 }
 
 let isOver = false
-let acknowledged = 0
 let measured = 0
 let isMeasuring = false
 const latenciesMs = []
@@ -68,7 +67,6 @@ function connect(device) {
     let at = 0
     for (; at + 4 <= bytes.length; at += 4) {
       open--
-      acknowledged++
       if (!isMeasuring) continue
       measured++
       if (measured % 16 === 0) latenciesMs.push(now - sentMs[(bytes[at + 2] << 8) | bytes[at + 3]])
@@ -77,12 +75,10 @@ function connect(device) {
     send()
   })
   socket.on('close', () => isOver || process.exit(3))
-  socket.on('connect', () => undefined)
 }
 
 devices.forEach(connect)
-const startedAt = () => new Promise((resolve) => setTimeout(resolve, 2000))
-await startedAt()
+await new Promise((resolve) => setTimeout(resolve, 2000))
 isMeasuring = true
 process.send({ phase: 'measuring' })
 await new Promise((resolve) => setTimeout(resolve, seconds * 1000))

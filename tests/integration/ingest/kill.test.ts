@@ -129,9 +129,9 @@ async function startTwenty(name: string, keepaliveS: number): Promise<Publisher[
   const sensors: TestSensor[] = []
   for (let index = 0; index < publisherCount; index++) sensors.push(await site.addSensor(`${name}-${index}`))
   const baseMs = Math.floor(Date.now() / 1000) * 1000 - 86_400_000
-  const publishers = startPublishers(sensors, { port, baseMs, everyMs, windowMax: 400, keepaliveS })
+  const publishers = startPublishers(sensors, { port, baseMs, everyMs, windowMax: 1000, keepaliveS })
   const begun = () => publishers.every((publisher) => publisher.acknowledged.size > 0)
-  for (let tries = 0; tries < 600 && !begun(); tries++) await pause(50)
+  for (let tries = 0; tries < 1200 && !begun(); tries++) await pause(50)
   expect(begun()).toBe(true)
   return publishers
 }
@@ -187,7 +187,7 @@ describe('under load of twenty publisher processes', () => {
     }
     const seconds = (Date.now() - startedMs) / 1000
     const sent = sum(publishers, (publisher) => publisher.sent)
-    await finishPublishers(publishers, 40_000)
+    await finishPublishers(publishers, 60_000)
     const acknowledged = sum(publishers, (publisher) => publisher.acknowledged.size)
     console.log(`${done.join(', ')}: ${sent} sent in ${seconds.toFixed(0)} s, ${acknowledged} acknowledged`)
     expect(sent / seconds).toBeGreaterThanOrEqual(500)
@@ -214,7 +214,7 @@ describe('under load of twenty publisher processes', () => {
     await pause(3000 * keepaliveS)
     await cluster.restart()
     await pause(1000)
-    await finishPublishers(publishers, 40_000)
+    await finishPublishers(publishers, 60_000)
     await expectNothingLost(publishers)
     expect(sum(publishers, (publisher) => publisher.acknowledged.size)).toBe(
       sum(publishers, (publisher) => publisher.sent),
