@@ -44,6 +44,8 @@ export const GATES = {
   timeConstants: 0.35,
   durationS: 900,
   points: 5,
+  /** below this many readings in two and a half time constants the start is too uncertain for an accepted figure */
+  tellingPoints: 6,
   /** largest gap as a share of the window */
   gapShare: 0.3,
   /** relative half-width of the 95 % interval up to which a figure is accepted, and up to which it is given at all */

@@ -97,7 +97,13 @@ function boundKind(reading: Reading, record: CleanRecord): EstimateKind {
   if (reading.demand) return 'range'
   const wide = halfWidth(reading) > GATES.doubtfulHalfWidth
   const falls = (record.stepS / 3600) * estimate.ratePerHour
-  if (falls > 0.9 || (wide && falls > 0.5)) return 'at-least'
+  const telling = pointsInside(record, reading.fromS, reading.toS)
+  if (
+    falls > 0.9 ||
+    (telling < GATES.tellingPoints && falls > 0.25 && !record.onChange) ||
+    (wide && falls > 0.5)
+  )
+    return 'at-least'
   if (wide && estimate.ratePerHour < 0.35 && piece.toH - piece.fromH > 1) return 'at-most'
   return 'fit'
 }

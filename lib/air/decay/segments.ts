@@ -145,6 +145,18 @@ function addBreak(data: Binned, fit: PiecewiseFit, prior: Prior | null, leastH: 
   return best ? slideBreaks(data, best, prior, leastH) : null
 }
 
+/** Changes of less than this ratio are more often wind or the background than a fan: they must be that many times surer. */
+const SLIGHT_RATIO = 1.35
+const SLIGHT_FACTOR = 3
+
+function slightChange({ ratesPerHour }: PiecewiseFit): boolean {
+  return ratesPerHour.some((rate, k) => {
+    const before = ratesPerHour[k - 1]
+    if (before === undefined || rate <= 0 || before <= 0) return false
+    return Math.max(rate, before) < SLIGHT_RATIO * Math.min(rate, before)
+  })
+}
+
 /** Splits a fall at the instants where its rate changes. Null when not even one rate can be fitted. */
 export function segmentFall(
   data: Binned,
@@ -179,7 +191,8 @@ export function segmentFall(
     }
     if (!cheapest) break
     const slid = slideBreaks(data, cheapest, prior, leastH)
-    if (slid.chiSquared - fit.chiSquared > asked) break
+    const lost = slid.chiSquared - fit.chiSquared
+    if (lost > asked * (slightChange(fit) ? SLIGHT_FACTOR : 1)) break
     fit = slid
   }
   return { fit, scale: longRunScale(fit, data) }
