@@ -4,7 +4,7 @@ import type { NewRoomWeek } from '@/db/changes/weeks'
 import type { BuildingPlan, PlanDesign, PlanRoom } from '@/db/queries/building-plan'
 import { personsSupported } from '@/lib/air/supports'
 import { MODES, type Mode } from '@/lib/air/types'
-import { judgeRoom, type RoomVerdict, VERDICT_DAYS } from '@/lib/air/verdict'
+import { judgeRoom, type RoomVerdict, VERDICT_DAYS, VERDICT_MIN_DAYS } from '@/lib/air/verdict'
 import { combineDays } from '@/lib/air/weeks'
 import { addDays } from '@/lib/time'
 import { airSystemOf, designOn } from '../analysis/rooms'
@@ -72,7 +72,8 @@ function verdictColumns(
     flowLps: verdict.flowLps?.value ?? null,
     flowLowLps: verdict.flowLps?.low ?? null,
     flowHighLps: verdict.flowLps?.high ?? null,
-    supportsPersons: supports.persons,
+    // too few days to judge by are too few to promise by
+    supportsPersons: verdict.days >= VERDICT_MIN_DAYS ? supports.persons : null,
     modeFrom: verdict.modeFrom ?? null,
     verdictSince: verdict.sinceNight,
     mode: verdict.mode ?? occupiedMode(plan, room),

@@ -29,11 +29,11 @@ function leadOf(rooms: readonly DigestRoom[]): string[] {
     .filter((room) => room.standing === 'too little')
     .map((room) => {
       const planned = room.plannedFor === null ? '' : ` It is planned for ${people(room.plannedFor)}.`
-      const takes =
-        room.supportsPersons === null
-          ? 'gets less outdoor air than was agreed.'
-          : `gets less outdoor air than was agreed: enough for ${people(room.supportsPersons)}.${planned}`
-      return `${room.name} ${takes}`
+      const less = `${room.name} gets less outdoor air than was agreed`
+      if (room.supportsPersons === null) return `${less}.${planned}`
+      if (room.supportsPersons === 0)
+        return `${less}: too little for anyone to stay by that measure.${planned}`
+      return `${less}: enough for ${people(room.supportsPersons)}.${planned}`
     })
   const stale = rooms.filter((room) => room.overMinutes > 0)
   const worst = [...stale].sort((a, b) => b.overMinutes - a.overMinutes).slice(0, 3)

@@ -5,7 +5,7 @@ import { glassLevel } from '@/lib/air/room-state'
 import { addDays, localDayBounds } from '@/lib/time'
 import type { DigestDay, DigestRoom } from '@/lib/wire/digests'
 import type { WeekMaterial } from './material'
-import { dayState, duration, list, plainReason, standingOf, weekdayOf } from './words'
+import { dayState, duration, inWords, list, plainReason, standingOf, weekdayOf } from './words'
 
 /** A room that stood at its limit counts as fresh when three quarters of the way back to outdoor air are done. */
 const FRESH_SHARE = 0.75
@@ -47,7 +47,11 @@ function overInWords(
   const over = days.filter(({ facts }) => facts.overMin > 0)
   const total = duration(over.reduce((sum, { facts }) => sum + facts.overMin, 0))
   if (over.length > 0) {
-    const when = options.namesDays ? `on ${list(over.map(({ date }) => weekdayOf(date)))}` : 'in the week'
+    const named =
+      over.length >= 5
+        ? `on ${inWords(over.length)} days`
+        : `on ${list(over.map(({ date }) => weekdayOf(date)))}`
+    const when = options.namesDays ? named : 'in the week'
     return `over the limit for ${total} ${when}`
   }
   if (days.length === 0) return 'nothing heard this week'

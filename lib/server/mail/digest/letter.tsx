@@ -73,6 +73,7 @@ function RoomTable({ rooms }: { rooms: readonly DigestRoom[] }) {
           <tr key={room.roomId}>
             <th scope="row" style={styles.rowHead}>
               {room.name}
+              {room.reason ? <div style={styles.reason}>{room.reason}</div> : null}
             </th>
             <td style={styles.figure}>
               {room.supportsPersons === null ? (

@@ -50,6 +50,7 @@ export const styles = {
     verticalAlign: 'top',
     fontWeight: 400,
   },
+  reason: { fontSize: 14, lineHeight: '20px', color: ink3 },
   figure: {
     padding: '8px 0',
     borderBottom: `1px solid ${rule}`,
