@@ -57,7 +57,10 @@ export function listDigests(tx: Tx, { buildingId, limit }: { buildingId: number;
 /** One digest in scope, or undefined. */
 export async function getDigest(tx: Tx, { publicId }: { publicId: string }) {
   const [row] = await tx
-    .select({ digest: digests, tenancy: { publicId: tenancies.publicId, name: tenancies.name } })
+    .select({
+      digest: digests,
+      tenancy: { publicId: tenancies.publicId, name: tenancies.name, digestEmails: tenancies.digestEmails },
+    })
     .from(digests)
     .innerJoin(tenancies, eq(tenancies.id, digests.tenancyId))
     .where(eq(digests.publicId, publicId))
