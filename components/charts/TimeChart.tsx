@@ -96,14 +96,14 @@ export function TimeChart(props: TimeChartProps) {
         {plot && window && <WindowHandles plot={plot} window={window} timeZone={timeZone} drawn={drawn} />}
       </div>
       <div className="flex min-h-[19px] flex-wrap items-baseline gap-4 text-2 text-ink-3">
-        {zoomable && !whole && (
-          <button
-            type="button"
-            className="no-print underline decoration-edge underline-offset-[3px]"
-            onClick={() => show(props.fromS, props.toS)}
-          >
-            Show all of it
-          </button>
+        {zoomable && (
+          <span className="no-print flex gap-[14px]">
+            <ZoomWord words="Closer" onClick={() => show(...zoomed(view, 0.5, [props.fromS, props.toS]))} />
+            {!whole && (
+              <ZoomWord words="Wider" onClick={() => show(...zoomed(view, 2, [props.fromS, props.toS]))} />
+            )}
+            {!whole && <ZoomWord words="Show all of it" onClick={() => show(props.fromS, props.toS)} />}
+          </span>
         )}
         {words && cursorS !== null && (
           <output className="fig text-1">
@@ -113,6 +113,19 @@ export function TimeChart(props: TimeChartProps) {
       </div>
       {table && <ChartTable table={table} />}
     </figure>
+  )
+}
+
+/** Zooming without a mouse or a keyboard. */
+function ZoomWord({ words, onClick }: { words: string; onClick: () => void }) {
+  return (
+    <button
+      type="button"
+      className="text-ink-2 underline decoration-edge underline-offset-[3px] max-sm:min-h-[44px]"
+      onClick={onClick}
+    >
+      {words}
+    </button>
   )
 }
 

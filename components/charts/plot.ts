@@ -21,6 +21,7 @@ export type Live = {
 const RIGHT_PX = 88
 const NARROW_PX = 500
 const VALUE_WIDTH_PX = 44
+const LABEL_HALF_PX = 20
 
 /** Makes the one kind of uPlot that Ebbmark draws: it gives axes, scales and the drag to zoom; the layers are drawn by ./draw. */
 export function makePlot(
@@ -88,15 +89,19 @@ export function dataOf({ spec, view }: Live): uPlot.AlignedData {
 function timeAxis(live: () => Live, narrow: boolean): uPlot.Axis {
   const ticks = (u: uPlot) => {
     const most = Math.max(2, Math.floor(u.bbox.width / uPlot.pxRatio / (narrow ? 64 : 72)))
-    return timeTicks(live().view[0], live().view[1], live().timeZone, most)
+    const [fromS, toS] = live().view
+    // half a label's width is kept free at both ends, so that none is cut
+    const edgeS = ((toS - fromS) * LABEL_HALF_PX * uPlot.pxRatio) / u.bbox.width
+    const ticks = timeTicks(fromS, toS, live().timeZone, most)
+    return narrow ? ticks.filter(({ atS }) => atS < toS - edgeS) : ticks
   }
   return {
     scale: 'x',
     side: 2,
-    size: 42,
-    gap: 9,
+    size: 36,
+    gap: 8,
     grid: { show: false },
-    border: { show: true, stroke: () => readPalette().ink, width: 1 },
+    border: { show: false },
     ticks: { show: true, stroke: () => readPalette().edge, size: 9, width: 1 },
     stroke: () => readPalette().ink3,
     font: `11.5px ${readPalette().figures}`,

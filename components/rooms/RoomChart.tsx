@@ -88,7 +88,10 @@ export function RoomChart(props: RoomChartProps) {
         readout={readout}
         table={table}
       />
-      <p className="mt-1 text-2 text-ink-3">{decayCaption(decays)} Drag over the chart to look closer.</p>
+      <p className="mt-1 text-2 text-ink-3">
+        {decayCaption(decays)}{' '}
+        <span className="pointer-coarse:hidden">Drag over the chart to look closer.</span>
+      </p>
     </section>
   )
 }

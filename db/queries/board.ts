@@ -4,6 +4,7 @@ import {
   airHandlers,
   buildings,
   floors,
+  hours,
   placements,
   rooms,
   roomTenancies,
@@ -13,6 +14,7 @@ import {
   supplyStates,
   tenancies,
 } from '../schema'
+import { listClosures } from './closures'
 
 /** The lead sensor of a room, or the outdoor sensor where `roomId` is null. */
 export type BoardSensor = {
@@ -117,6 +119,16 @@ export async function readBoardPlan(tx: Tx, { buildingId }: { buildingId: number
     building,
     floors: floorRows,
     supply,
+    supplyHours: await tx
+      .select({
+        airHandlerId: hours.airHandlerId,
+        days: hours.days,
+        from: hours.fromLocal,
+        to: hours.toLocal,
+      })
+      .from(hours)
+      .where(and(eq(hours.buildingId, buildingId), eq(hours.purpose, 'supply'))),
+    closures: await listClosures(tx, { buildingId }),
     rooms: await listBoardRooms(tx, { buildingId }),
     verdicts: await listBoardVerdicts(tx, { buildingId }),
     sensors: await listBoardSensors(tx, { buildingId }),

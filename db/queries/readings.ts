@@ -22,9 +22,12 @@ function pointsOf(buckets: readonly Bucket[]): ChartPoint[] {
 
 type Span = { fromS: number; toS: number }
 
-/** The offset of a fresh-air check that holds for each reading `v`; the raw reading stays. */
-const corrected = sql.raw(`co2_ppm + coalesce((SELECT o.offset_ppm FROM sensor_offsets o
-  WHERE o.sensor_id = v.sensor_id AND o.from_at <= v.at ORDER BY o.from_at DESC LIMIT 1), 0)`)
+/** Readings with the offset of the fresh-air check that holds for each; the raw reading stays. Use as `FROM ${correctedReadings}`. */
+const correctedReadings = sql.raw(`(visible_readings v LEFT JOIN (
+    SELECT sensor_id AS offset_sensor_id, offset_ppm, from_at, lead(from_at) OVER (PARTITION BY sensor_id ORDER BY from_at) AS until
+    FROM sensor_offsets) o
+  ON o.offset_sensor_id = v.sensor_id AND v.at >= o.from_at AND (o.until IS NULL OR v.at < o.until))`)
+const corrected = sql.raw('(v.co2_ppm + coalesce(o.offset_ppm, 0))::double precision')
 
 /**
  * CO2 of a room's lead sensor between two instants in at most `points` points: the time is cut into half as many stretches, and of
@@ -36,9 +39,9 @@ export async function readRoomSeries(
 ): Promise<RoomSeries> {
   const stretches = Math.max(1, Math.floor(points / 2))
   const { rows } = await tx.execute<Bucket>(sql`
-    WITH r AS (
-      SELECT extract(epoch from v.at)::double precision AS t, (${corrected})::double precision AS c
-      FROM visible_readings v
+    WITH r AS MATERIALIZED (
+      SELECT extract(epoch from v.at)::double precision AS t, ${corrected} AS c
+      FROM ${correctedReadings}
       WHERE v.room_id = ${roomId} AND v.lead AND v.at >= to_timestamp(${fromS}) AND v.at < to_timestamp(${toS}))
     SELECT count(*)::int AS n, min(c) AS lo, max(c) AS hi,
       (array_agg(t ORDER BY c, t))[1] AS lo_at, (array_agg(t ORDER BY c DESC, t))[1] AS hi_at
@@ -66,8 +69,8 @@ async function readOutdoorMeans(
   { buildingId, fromS, toS, stretches }: Span & { buildingId: number; stretches: number },
 ): Promise<ChartPoint[]> {
   const { rows } = await tx.execute<{ t: number; c: number }>(sql`
-    SELECT avg(extract(epoch from v.at))::double precision AS t, avg(${corrected})::double precision AS c
-    FROM visible_readings v
+    SELECT avg(extract(epoch from v.at))::double precision AS t, avg(${corrected}) AS c
+    FROM ${correctedReadings}
     WHERE v.building_id = ${buildingId} AND v.position = 'outdoor' AND v.at >= to_timestamp(${fromS}) AND v.at < to_timestamp(${toS})
     GROUP BY width_bucket(extract(epoch from v.at)::double precision, ${fromS}, ${toS}, ${stretches}) ORDER BY 1`)
   return rows.map(({ t, c }): ChartPoint => [t, c])

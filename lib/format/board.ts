@@ -178,7 +178,8 @@ export function supplyWords(
   timeZone: string,
 ): string {
   if (!supply) return ''
-  return `supply ${supply.state} since ${dayAndClock(supply.sinceS, nowS, timeZone)}`
+  const how = supply.origin === 'schedule' ? ' by schedule' : ''
+  return `supply ${supply.state}${how} since ${dayAndClock(supply.sinceS, nowS, timeZone)}`
 }
 
 /** "1238 ppm", or "800 ppm above outdoor" where rooms have different ones. */

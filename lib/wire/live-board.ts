@@ -47,8 +47,14 @@ export const boardFloorSchema = z.object({
   id: z.number(),
   name: z.string(),
   ordinal: z.number(),
-  /** the supply status that the floor's air handlers agree on, and since when */
-  supply: z.object({ state: z.enum(['on', 'reduced', 'off']), sinceS: z.number() }).nullable(),
+  /** what the supply of the floor's air handlers agrees on, since when, and how that is known */
+  supply: z
+    .object({
+      state: z.enum(['on', 'reduced', 'off']),
+      sinceS: z.number(),
+      origin: z.enum(['status', 'schedule']),
+    })
+    .nullable(),
 })
 export type BoardFloor = z.infer<typeof boardFloorSchema>
 

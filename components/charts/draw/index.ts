@@ -1,7 +1,7 @@
 import uPlot from 'uplot'
 import type { ChartSpec, ChartWindow } from '../types'
 import { drawArea, drawBand, drawLine, drawPoints, drawStems } from './courses'
-import { type Frame, frameOf } from './frame'
+import { type Frame, frameOf, pen, sharp } from './frame'
 import { drawEndLabels } from './labels'
 import { drawInterval, drawLanes, drawLevel, drawSupply, drawUpright } from './marks'
 
@@ -26,6 +26,7 @@ export function drawAbove(u: uPlot, spec: ChartSpec): void {
   if (spec.stems) drawStems(frame, spec.stems)
   for (const upright of spec.uprights ?? []) drawUpright(frame, upright)
   for (const interval of spec.intervals ?? []) drawInterval(frame, interval)
+  drawAxisLine(frame)
   drawSupply(frame, spec.supply ?? [])
   drawLanes(frame, spec.lanes ?? [])
   drawEndLabels(frame, spec)
@@ -36,4 +37,14 @@ function drawWash(frame: Frame, window: ChartWindow): void {
   const to = Math.min(frame.right, frame.x(window.toS))
   frame.context.fillStyle = frame.palette.washTide
   if (to > from) frame.context.fillRect(from, frame.top, to - from, frame.bottom - frame.top)
+}
+
+/** The bottom axis in ink; values have no side line, their labels stand on hairlines. */
+function drawAxisLine(frame: Frame): void {
+  const { context, left, right, bottom, palette } = frame
+  pen(frame, palette.ink, 1)
+  context.beginPath()
+  context.moveTo(left, sharp(bottom))
+  context.lineTo(right, sharp(bottom))
+  context.stroke()
 }

@@ -1,5 +1,6 @@
 import type { BoardPlan, BoardSensor } from '@/db/queries/board'
 import { type LiveReading, limitLevelPpm, roomState, silentAfterS } from '@/lib/air/room-state'
+import { supplySpans } from '@/lib/format/supply-spans'
 import { localDate, localDayBounds } from '@/lib/time'
 import type { Board, BoardFloor, RoomTile } from '@/lib/wire/live-board'
 
@@ -47,7 +48,7 @@ export function boardOf(plan: BoardPlan, series: Known, nowS: number): Board {
     atS: nowS,
     outdoor,
     lastReadingS,
-    floors: floorsOf(plan),
+    floors: floorsOf(plan, nowS),
     rooms,
   }
 }
@@ -81,20 +82,41 @@ function outdoorNow(plan: BoardPlan, series: Known, nowS: number): Board['outdoo
   return { ppm: plan.building.outdoorDefaultPpm, measured: false }
 }
 
-/** Floors with the supply status their air handlers agree on; where they differ, or none reports, nothing is said. */
-function floorsOf(plan: BoardPlan): BoardFloor[] {
+/** How far back the schedule is followed to find since when the supply has been on or off. */
+const SCHEDULE_BACK_S = 8 * 86_400
+
+/** Floors with the supply that their air handlers agree on; where they differ, or nothing is known, nothing is said. */
+function floorsOf(plan: BoardPlan, nowS: number): BoardFloor[] {
   return plan.floors
     .filter((floor) => plan.rooms.some(({ floorId }) => floorId === floor.id))
     .map((floor) => {
-      const handlers = new Set(
-        plan.rooms.filter(({ floorId }) => floorId === floor.id).map((room) => room.airHandlerId),
+      const own = plan.rooms.filter(
+        ({ floorId, airHandlerId }) => floorId === floor.id && airHandlerId !== null,
       )
-      const states = plan.supply.filter(({ airHandlerId }) => handlers.has(airHandlerId))
-      const first = states[0]
-      const agree = first && states.every(({ state }) => state === first.state)
-      const supply = agree
-        ? { state: first.state, sinceS: Math.max(...states.map(({ sinceS }) => sinceS)) }
-        : null
-      return { ...floor, supply }
+      const supplies = [...new Set(own.map((room) => room.airHandlerId ?? 0))].map((id) =>
+        supplyOf(plan, id, nowS),
+      )
+      const first = supplies[0]
+      const agree = first && supplies.every((supply) => supply?.state === first.state)
+      return { ...floor, supply: agree ? latest(supplies) : null }
     })
+}
+
+type Supply = NonNullable<BoardFloor['supply']>
+
+const latest = (supplies: readonly (Supply | null)[]): Supply | null =>
+  supplies.reduce((a, b) => (a && b && b.sinceS > a.sinceS ? b : a), supplies[0] ?? null)
+
+/** An air handler's supply now: by its status signal, else by its weekly hours. */
+function supplyOf(plan: BoardPlan, airHandlerId: number, nowS: number): Supply | null {
+  const status = plan.supply.find((each) => each.airHandlerId === airHandlerId)
+  if (status) return { state: status.state, sinceS: status.sinceS, origin: 'status' }
+  const hours = plan.supplyHours.filter((each) => each.airHandlerId === airHandlerId)
+  if (hours.length === 0) return null
+  const record = { states: [], hours, closures: plan.closures }
+  const spans = supplySpans(record, nowS - SCHEDULE_BACK_S, nowS, plan.building.timeZone)
+  const last = spans[spans.length - 1]
+  if (!last) return null
+  const on = last.toS >= nowS
+  return { state: on ? 'on' : 'off', sinceS: on ? last.fromS : last.toS, origin: 'schedule' }
 }
