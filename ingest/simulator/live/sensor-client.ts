@@ -49,6 +49,7 @@ export class SensorClient {
       keepalive: 60,
       protocolVersion: 4,
       reconnectPeriod: RETRY_FIRST_MS,
+      reconnectOnConnackError: true, // refused while the store is away: it comes again
       will: {
         topic: topicOf(site, deviceId, 'status'),
         payload: Buffer.from('offline'),
