@@ -89,8 +89,14 @@ async function stop(why: string): Promise<void> {
   broker.refuseNew()
   await ingest.stop(stopGraceMs)
   await within(broker.stop(), 1000)
-  await within(Promise.all([listener.stop(), endHeartbeat(database, id)]), 1000)
-  await within(database.close(), 500)
+  const farewell = endHeartbeat(database, id).catch((error: Error) =>
+    logger.warn({ err: error.message }, 'the heartbeat was not taken away'),
+  )
+  await within(Promise.all([listener.stop(), farewell]), 1000)
+  await within(
+    database.close().catch(() => undefined),
+    500,
+  )
   logger.info({ ...ingest.counters }, 'stopped')
   process.exit(0)
 }
