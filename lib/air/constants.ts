@@ -33,7 +33,7 @@ export const DETECTION = {
  * Imperfect mixing as a sensor sees it: standard deviation as a share of the excess, correlation time, and how many blocks of residuals that
  * expectation is worth against a record's own (chosen; typical of one-minute records in occupied rooms).
  */
-export const MIXING = { share: 0.008, correlationS: 360, priorDegrees: 8, leastVariance: 0.15 } as const
+export const MIXING = { share: 0.008, correlationS: 360, priorDegrees: 8, leastVariance: 0.4 } as const
 
 /** Gates of a usable decay (practice; methods of tracer decay, see E741 and ISO 12569 for the two-point minimum A T = 1). */
 export const GATES = {
@@ -63,7 +63,7 @@ export const BACKGROUND = {
   wanderS: 6 * 3600,
   otherNightPpm: 12,
   driftPpmPerHour: 5,
-  zeroDriftPpmPerHour: 1,
+  zeroDriftPpmPerHour: 1.5,
   sensorOffsetPpm: 18,
   leastPpm: 5,
 } as const

@@ -17,21 +17,38 @@ export type FiguresAndMoments = {
 }
 
 /**
+ * Doubt of one record's tail rate, relative: its own bend, or half of how much faster it falls than the slowest record of the room, which
+ * all of them must come to in the end.
+ */
+function tailDoubt(moments: CurveMoments, slowestPerS: number): number {
+  if (!moments.tail) return 0
+  const { rateDoubt, ratePerS } = moments.tail
+  return Math.min(0.6, Math.max(rateDoubt, (ratePerS - slowestPerS) / (2 * ratePerS)))
+}
+
+/**
  * Ages from the moments: local mean age μ0 at a point; in the exhaust nominal time μ0, room mean age μ1/μ0 and their quotient, the
  * effectiveness coefficient. For decay and step-up alike, each with its own F.
+ * @param tailSign 0 for the figures; −1 or 1 for those with every tail slower or faster by its doubt
  * @source Roulet ch. 3, eqs 3.10 to 3.12; Sandberg 1981 (from memory)
  */
-export function figuresOf(test: NormalisedTest, rateFactor = 1): FiguresAndMoments {
-  const momentsOf = (curve: NonNullable<NormalisedTest['exhaust']>) =>
-    curveMoments(curve, test.floorDoubt, rateFactor)
-  const exhaust = test.exhaust ? momentsOf(test.exhaust) : null
-  const points = Object.fromEntries(
-    Object.entries(test.points).map(([name, curve]) => [name, momentsOf(curve)]),
-  )
+export function figuresOf(test: NormalisedTest, tailSign: -1 | 0 | 1 = 0): FiguresAndMoments {
+  const curves = [...(test.exhaust ? [test.exhaust] : []), ...Object.values(test.points)]
+  const plain = curves.map((curve) => curveMoments(curve, test.floorDoubt))
+  const slowest = Math.min(...plain.flatMap((one) => (one.tail ? [one.tail.ratePerS] : [])))
+  const moments =
+    tailSign === 0
+      ? plain
+      : curves.map((curve, i) =>
+          curveMoments(curve, test.floorDoubt, (1 + tailDoubt(plain[i]!, slowest)) ** tailSign),
+        )
+  const exhaust = test.exhaust ? moments[0]! : null
+  const ofPoints = test.exhaust ? moments.slice(1) : moments
+  const points = Object.fromEntries(Object.keys(test.points).map((name, i) => [name, ofPoints[i]!]))
   const nominalTimeS = exhaust?.decays ? exhaust.mu0 : Number.NaN
   const roomMeanAgeS = exhaust?.decays ? exhaust.mu1 / exhaust.mu0 : Number.NaN
   const ages = Object.fromEntries(
-    Object.entries(points).map(([name, moments]) => [name, moments.decays ? moments.mu0 : Number.NaN]),
+    Object.entries(points).map(([name, one]) => [name, one.decays ? one.mu0 : Number.NaN]),
   )
   const indices = Object.fromEntries(Object.entries(ages).map(([name, age]) => [name, nominalTimeS / age]))
   const coefficient = nominalTimeS / roomMeanAgeS

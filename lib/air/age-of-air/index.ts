@@ -20,7 +20,7 @@ export {
 /** Share of a result beyond the record from which it is warned of (methods section 2.3). */
 const MOST_TAIL_SHARE = 0.25
 /** Nothing is claimed to be better known than this, relative (engineering choice: time stamps, interpolation). */
-const LEAST_RELATIVE_UNCERTAINTY = 0.0015
+const LEAST_RELATIVE_UNCERTAINTY = 0.002
 const MOST_COEFFICIENT = 2
 
 /** Figure with its limits on the ln scale; capped where physics caps it. */

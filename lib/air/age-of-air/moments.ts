@@ -156,7 +156,7 @@ function fitTail(curve: Curve, last: number, floor: number): Tail | null {
     fit = late
   }
   if (!fit || !whole) return null
-  const bend = Math.abs(whole.rate - fit.rate) / (2 * fit.rate)
+  const bend = Math.abs(whole.rate - fit.rate) / fit.rate
   const rateDoubt = Math.min(0.5, Math.max(LEAST_RATE_DOUBT, bend))
   return { fromS, share: fit.level, ratePerS: fit.rate, rateDoubt }
 }

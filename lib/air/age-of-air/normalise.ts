@@ -25,6 +25,9 @@ const before = (samples: readonly Sample[]) =>
   samples.filter(([timeS]) => timeS <= 0).map(([, value]) => value)
 const meanOf = (values: readonly number[]) => values.reduce((sum, value) => sum + value, 0) / values.length
 
+/** A poorly known final level widens the interval, but does not throw more of the record away than this. */
+const MOST_FLOOR_DOUBT = 0.008
+
 /** Places whose level before the step may differ by this share of the step (ASTM E741's 10 % uniformity, from memory). */
 const UNIFORMITY = 0.1
 
@@ -133,7 +136,10 @@ export function normaliseTest(test: TracerTest, override: Override = {}): Normal
     step,
     stepDoubt,
     backgroundDoubt,
-    floorDoubt: test.kind === 'decay' ? backgroundDoubt : Math.hypot(backgroundDoubt, stepDoubt),
+    floorDoubt:
+      test.kind === 'decay'
+        ? backgroundDoubt
+        : Math.hypot(backgroundDoubt, Math.min(stepDoubt, MOST_FLOOR_DOUBT)),
     warnings,
   }
 }

@@ -98,11 +98,14 @@ export function fitSteady(records: readonly (readonly Sample[])[]): Steady | nul
   // a window that describes the record need not be doubted for what others say; one that does not is doubted by their spread
   const windowDoubt = index === -1 ? Math.max(...others) / 2 : 0
   const last = chosen.used.map((samples) => samples.at(-1)![1])
-  const beyond = Math.abs(level - last.reduce((sum, value) => sum + value, 0) / last.length)
+  // the more of the level is extrapolated, the less the last exponential can be trusted
+  const beyond = Math.max(...last.map((value) => Math.abs(level - value)))
+  const size = Math.max(Math.abs(level), 1e-300)
+  const extrapolationDoubt = (0.05 + (1.5 * beyond) / size) * beyond
   const rateDoubt = 1.8 * Math.sqrt(chosen.variance * levelVariance)
   return {
     level,
-    standardUncertainty: Math.hypot(rateDoubt, windowDoubt, 0.12 * beyond),
-    reachedShare: 1 - beyond / Math.max(Math.abs(level), 1e-300),
+    standardUncertainty: Math.hypot(rateDoubt, windowDoubt, extrapolationDoubt),
+    reachedShare: 1 - beyond / size,
   }
 }

@@ -80,16 +80,11 @@ function noiseVariances(test: TracerTest, base: Map<string, number>, noisy: bool
   )
 }
 
-/** How much the tail's doubt is worth for one figure: its rate is wrong by the doubt of that record's tail. */
-function tailVariances(normalised: NormalisedTest, moments: FiguresAndMoments, base: Map<string, number>) {
+/** What the doubt of every tail's rate is worth. */
+function tailVariances(normalised: NormalisedTest, base: Map<string, number>) {
   const variances = new Map<string, number>()
-  const all = [moments.exhaust, ...Object.values(moments.points)]
-  const doubt = Math.max(0, ...all.map((one) => one?.tail?.rateDoubt ?? 0))
-  if (doubt === 0) return variances
-  const slower = flatten(figuresOf(normalised, 1 / (1 + doubt)).figures)
-  const faster = flatten(figuresOf(normalised, 1 + doubt).figures)
-  addDifference(variances, base, slower, 0.5)
-  addDifference(variances, base, faster, 0.5)
+  addDifference(variances, base, flatten(figuresOf(normalised, -1).figures), 0.5)
+  addDifference(variances, base, flatten(figuresOf(normalised, 1).figures), 0.5)
   return variances
 }
 
@@ -107,15 +102,9 @@ function thinned(test: TracerTest): TracerTest {
   }
 }
 
-function stepVariances(
-  test: TracerTest,
-  moments: FiguresAndMoments,
-  base: Map<string, number>,
-  noisy: boolean,
-) {
+function stepVariances(test: TracerTest, moments: FiguresAndMoments, base: Map<string, number>) {
   const variances = new Map<string, number>()
-  // with noise the difference is mostly noise, which is counted already
-  if (!noisy) addDifference(variances, base, flatten(figuresOf(normaliseTest(thinned(test))).figures), 1 / 9)
+  addDifference(variances, base, flatten(figuresOf(normaliseTest(thinned(test))).figures), 1 / 9)
   const jump = (moments.exhaust?.jumpDoubt ?? 0) ** 2
   for (const name of ['nominal', 'mean']) variances.set(name, (variances.get(name) ?? 0) + jump)
   for (const [name, one] of Object.entries(moments.points)) {
@@ -142,8 +131,8 @@ export function standardUncertainties(
     for (const [name, value] of part) total.set(name, (total.get(name) ?? 0) + value)
   }
   include(noiseVariances(test, base, noisy))
-  include(tailVariances(normalised, moments, base))
-  include(stepVariances(test, moments, base, noisy))
+  include(tailVariances(normalised, base))
+  include(stepVariances(test, moments, base))
   const shifted = new Map<string, number>()
   const backgroundShift = normalised.backgroundDoubt * Math.abs(normalised.step)
   for (const sign of [-1, 1]) {

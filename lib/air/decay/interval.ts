@@ -12,7 +12,7 @@ import {
 } from './piecewise'
 
 /** Standard uncertainty of ln A from what no single model says: wind, doors, choice of window (chosen; checked by the coverage suites). */
-const MODEL_SHARE = 0.014
+const MODEL_SHARE = 0.025
 
 export type RateEstimate = {
   ratePerHour: number

@@ -18,7 +18,9 @@ import { hingeScores } from './segments'
 /** Left out after the last person left (practice: ten minutes at most; the rest is found from the readings). */
 const SETTLING_S = 180
 /** How sure a slow beginning must be to be cut, standard deviations. */
-const TRIM_SIGMAS = 1.7
+const TRIM_SIGMAS = 2.4
+/** At most so many time constants are cut at the start. */
+const TRIM_CONSTANTS = 0.8
 /** How much worse than steps demand control may fit and still be taken, in chi squared: the smooth law is the likelier one. */
 const DEMAND_MARGIN = 2
 
@@ -98,9 +100,12 @@ function trimEnds(run: Run, part: Binned, breaksH: readonly number[]): Binned {
     if (!fit) return kept
     const variance = Math.max(0.5, longRunScale(fit, kept).variance)
     const scores = hingeScores(kept, fit, prior)
-    const first = breaksH[0] ?? kept.timeH[kept.timeH.length - 1]!
-    const limitH =
-      kept.timeH[0]! + Math.min(0.5 * (first - kept.timeH[0]!), 0.9 / Math.max(0.05, pieces[0]!.ratePerHour))
+    const first = breaksH[0] ?? part.timeH[part.timeH.length - 1]!
+    const mostH = Math.min(
+      0.5 * (first - part.timeH[0]!),
+      TRIM_CONSTANTS / Math.max(0.05, pieces[0]!.ratePerHour),
+    )
+    const limitH = part.timeH[0]! + mostH
     let at = -1
     for (let i = 1; i < scores.length && kept.timeH[i]! <= limitH; i++)
       if (at < 0 || scores[i]! > scores[at]!) at = i
