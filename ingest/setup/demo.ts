@@ -1,6 +1,6 @@
 import type { Database } from '@/db/client'
 import { analyseHistory } from '@/ingest/nightly/analysis/history'
-import { judgeHistory } from '@/ingest/nightly/judge/history'
+import { judgeWeeks } from '@/ingest/nightly/judge/judge'
 import { seedDemo } from '@/ingest/simulator/load'
 import { ensureDemoPeople } from '@/lib/server/auth/demo-people'
 import { systemClock } from '@/lib/server/clock'
@@ -32,7 +32,10 @@ export async function prepareDemo({ database, timed, say }: Options): Promise<vo
     analyseHistory({ database, buildingId: demo.buildingId, fromDate, toDate }),
   )
   say(`  ${result.nights} nights, ${result.changed.length} new or changed, ${result.decaysAdded} decays`)
-  await timed('weeks judged', () =>
-    judgeHistory({ database, buildingId: demo.buildingId, fromDate, toDate, changed: result.changed }),
-  )
+  const changed = [...result.changed].sort()
+  const [first, last] = [changed[0], changed.at(-1)]
+  if (first && last)
+    await timed('weeks judged', () =>
+      judgeWeeks({ database, buildingId: demo.buildingId, fromDate: first, toDate: last }),
+    )
 }
