@@ -65,7 +65,7 @@ export function keepState(dataDir: string, birth: DemoBirth, state: SimulationSt
 }
 
 /** Raised whenever the mill's plan or physics change, so that no state of an older one is gone on from. */
-const PLAN_VERSION = 2
+const PLAN_VERSION = 3
 
 /** The random key of this installation's demo sensors, made once, readable by its owner only. */
 export function demoKey(dataDir: string): string {

@@ -8,6 +8,8 @@ import { personOf } from './person'
 export const MEETING_RATE = 1.25
 const LENGTHS_MIN = [30, 45, 60, 60, 75, 90]
 const FIRST_MIN = 9 * 60
+/** Many a day ends with a meeting from a quarter past four. */
+const LATE_FROM_MIN = 16 * 60 + 15
 const LAST_END_MIN = 17 * 60 + 40
 
 type Booking = { from: number; to: number; people: number }
@@ -54,5 +56,8 @@ function bookingsOf(world: World, room: RoomPlan, perDay: number, draws: Draws):
       bookings.push({ from: at, to: at + length, people: draws.whole(fewest, most) })
     at += length + 15 * draws.whole(1, 6)
   }
+  const isFree = (bookings.at(-1)?.to ?? 0) <= LATE_FROM_MIN - 30
+  if (isFree && draws.chance(0.6))
+    bookings.push({ from: LATE_FROM_MIN, to: draws.whole(1020, 1035), people: draws.whole(fewest, most) })
   return bookings
 }
