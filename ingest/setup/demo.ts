@@ -1,11 +1,9 @@
 import type { Database } from '@/db/client'
-import { analyseHistory } from '@/ingest/nightly/analysis/history'
-import { judgeWeeks } from '@/ingest/nightly/judge/judge'
+import { catchUp } from '@/ingest/nightly/catch-up'
 import { seedDemo } from '@/ingest/simulator/load'
 import { ensureDemoPeople } from '@/lib/server/auth/demo-people'
 import { systemClock } from '@/lib/server/clock'
 import { env } from '@/lib/server/env'
-import { addDays, localDate } from '@/lib/time'
 
 type Options = {
   database: Database
@@ -25,17 +23,7 @@ export async function prepareDemo({ database, timed, say }: Options): Promise<vo
       tenancyId: demo.tenancyIds.weir ?? 0,
     }),
   )
-  const { timeZone } = demo.world.scenario.building
-  const fromDate = addDays(localDate(demo.world.historyStartS, timeZone), 1)
-  const toDate = addDays(localDate(now.getTime() / 1000, timeZone), -1)
-  const result = await timed('nights analysed', () =>
-    analyseHistory({ database, buildingId: demo.buildingId, fromDate, toDate }),
+  await timed('nights analysed, weeks judged, letters written', () =>
+    catchUp({ database, clock: systemClock, say: (line) => say(`  ${line}`) }),
   )
-  say(`  ${result.nights} nights, ${result.changed.length} new or changed, ${result.decaysAdded} decays`)
-  const changed = [...result.changed].sort()
-  const [first, last] = [changed[0], changed.at(-1)]
-  if (first && last)
-    await timed('weeks judged', () =>
-      judgeWeeks({ database, buildingId: demo.buildingId, fromDate: first, toDate: last }),
-    )
 }
