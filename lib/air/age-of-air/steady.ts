@@ -101,7 +101,7 @@ export function fitSteady(records: readonly (readonly Sample[])[]): Steady | nul
   // the more of the level is extrapolated, the less the last exponential can be trusted
   const beyond = Math.max(...last.map((value) => Math.abs(level - value)))
   const size = Math.max(Math.abs(level), 1e-300)
-  const extrapolationDoubt = (0.05 + (1.5 * beyond) / size) * beyond
+  const extrapolationDoubt = (0.03 + beyond / size) * beyond
   const rateDoubt = 1.8 * Math.sqrt(chosen.variance * levelVariance)
   return {
     level,
