@@ -1,6 +1,7 @@
 import type { Database } from '@/db/client'
 import { newPublicId } from '@/db/public-id'
 import * as schema from '@/db/schema'
+import type { DigestContent } from '@/lib/wire/digests'
 import type { SmallOrganization } from './small-building'
 
 export type SmallResults = { decayPublicId: string; digestPublicId: string }
@@ -48,8 +49,45 @@ export async function addSmallResults(
       publicId: results.digestPublicId,
       tenancyId: tenancies.weir.id,
       weekStart: '2026-05-04',
-      content: {},
+      content: smallLetter(rooms.hall.publicId),
     })
   })
   return results
+}
+
+function smallLetter(roomId: string): DigestContent {
+  return {
+    version: 1,
+    building: { name: 'mill works', timeZone: 'Europe/Lisbon' },
+    tenancy: { name: 'Weir' },
+    weekStart: '2026-05-04',
+    weekEnd: '2026-05-10',
+    weekWords: '4 to 10 May',
+    title: 'Your room had enough outdoor air.',
+    lead: ['The hall had what was agreed.'],
+    rooms: [
+      {
+        roomId,
+        number: '0.01',
+        name: 'Hall',
+        use: 'office',
+        standing: 'enough',
+        reason: null,
+        supportsPersons: 8,
+        plannedFor: 8,
+        basisName: 'EN 16798-1 category II',
+        days: [],
+        overMinutes: 0,
+        occupiedMinutes: 2400,
+        heardMinutes: 2400,
+        overWords: 'never over the limit',
+        clearsInMinutes: 40,
+      },
+    ],
+    beingDone: [],
+    goodToKnow: null,
+    occupancyCaution:
+      'For ventilation only. Fire-safety and licensed occupancy limits may be lower and take precedence.',
+    cautions: [],
+  }
 }

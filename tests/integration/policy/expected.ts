@@ -14,6 +14,8 @@ const sensors: Holders = ['administrator', 'operator', 'engineer', 'installer']
 const registering: Holders = ['administrator', 'installer']
 const reviewing: Holders = ['engineer']
 const digests: Holders = ['administrator', 'operator', 'tenant']
+const sending: Holders = ['administrator', 'operator']
+const mailbox: Holders = ['administrator', 'operator']
 
 export const EXPECTED_PAGES: Record<string, Holders> = {
   '/': 'open',
@@ -30,6 +32,7 @@ export const EXPECTED_PAGES: Record<string, Holders> = {
   '/sensors/register': registering,
   '/digests': digests,
   '/digests/[digest]': digests,
+  '/mailbox': mailbox,
 }
 
 export const EXPECTED_ROUTES: Record<string, Holders> = {
@@ -39,6 +42,7 @@ export const EXPECTED_ROUTES: Record<string, Holders> = {
   'GET /api/v1/air-change': rates,
   'GET /api/v1/buildings': rooms,
   'GET /api/v1/decays': rates,
+  'GET /api/v1/digests': digests,
   'GET /api/v1/live': everyone,
   'GET /api/v1/readings': rooms,
   'GET /api/v1/rooms': rooms,
@@ -55,6 +59,7 @@ export const EXPECTED_ACTIONS: Record<string, { holders: Holders; answers: boole
   '(signed-in)/person-actions.ts#signOutEverywhere': { holders: everyone, answers: false },
   '(signed-in)/person-actions.ts#chooseBuilding': { holders: everyone, answers: false },
   '(signed-in)/decays/actions.ts#reviewDecayAction': { holders: reviewing, answers: true },
+  '(signed-in)/digests/actions.ts#sendDigestAction': { holders: sending, answers: true },
   '(signed-in)/sensors/actions.ts#registerSensorAction': { holders: registering, answers: true },
   '(signed-in)/sensors/actions.ts#renewSecretAction': { holders: registering, answers: true },
   '(signed-in)/sensors/actions.ts#retireSensorAction': { holders: registering, answers: true },
