@@ -26,7 +26,7 @@ export const DETECTION = {
   /** nothing is read across a silence longer than this, seconds */
   silenceS: 2700,
   /** most bins in one fit */
-  fitBins: 120,
+  fitBins: 90,
 } as const
 
 /**

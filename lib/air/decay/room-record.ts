@@ -7,7 +7,7 @@ import { type CleanRecord, cleanRecord } from './clean'
 import { decoupledRecord, fitCoupled, type Neighbour } from './coupled'
 import { type Fall, findFalls, levelTrack, type Track } from './falls'
 import { lowestLevel, type QuietFloor, restingLevels } from './floor'
-import { type FallReading, fallBins, readFall } from './read-fall'
+import { type FallReading, fallBins, readFall, usefulEnd } from './read-fall'
 
 export type DayWindow = { date: string; dayStartS: number; dayEndS: number }
 
@@ -86,6 +86,9 @@ export function readFalls(opened: RoomRecord, day: DayWindow, around: Surroundin
     .map((fall) => {
       const atS = fall.fromS + Math.min(5400, (fall.toS - fall.fromS) / 2)
       const background = backgroundFor(opened, atS, around)
+      // a decay of the evening before that was over by midnight has nothing to say here
+      const over = fall.fromS < day.dayStartS && usefulEnd(opened.record, fall, background) < day.dayStartS
+      if (over) return { fall, background, record: opened.record, reading: null }
       if (around.neighbour) {
         const coupled = readCoupled(opened, fall, background, around, atS)
         if (coupled) return coupled
