@@ -137,7 +137,7 @@ function settings(throwAway) {
  */
 export async function startCluster({ binaries, dir, port, logFile }) {
   const running = runningServer(dir)
-  if (running && (await answers(running.port)))
+  if (running && (await isServing(dir, running.port, () => !isAlive(running.pid))))
     return { dir, ...running, adopted: true, stop: () => stopServer(running.pid, dir) }
   if (!running) fs.rmSync(path.join(dir, 'postmaster.pid'), { force: true })
   const out = fs.openSync(logFile, 'a')
@@ -153,13 +153,35 @@ export async function startCluster({ binaries, dir, port, logFile }) {
   if (!pid) throw new Error(`PostgreSQL could not be started: ${words.command} was not found.`)
   let ended = false
   child.on('exit', () => (ended = true))
-  for (let tries = 0; tries < 600; tries++) {
-    if (await answers(port)) return { dir, port, pid, adopted: false, stop: () => stopServer(pid, dir) }
-    if (ended) break
-    await new Promise((resolve) => setTimeout(resolve, 50))
-  }
+  if (await isServing(dir, port, () => ended))
+    return { dir, port, pid, adopted: false, stop: () => stopServer(pid, dir) }
   const said = fs.readFileSync(logFile, 'utf8').trim().split('\n').slice(-5).join('\n')
   throw new Error(`PostgreSQL did not start on port ${port}. It said (${logFile}):\n${said}`)
+}
+
+/**
+ * Waits until the server takes work. It answers on its port before that, while it still starts or recovers; `ready` in the eighth line
+ * of postmaster.pid says that it is over.
+ * @param {string} dir
+ * @param {number} port
+ * @param {() => boolean} hasEnded
+ */
+async function isServing(dir, port, hasEnded) {
+  for (let tries = 0; tries < 600 && !hasEnded(); tries++) {
+    if (isReady(dir) && (await answers(port))) return true
+    await new Promise((resolve) => setTimeout(resolve, 50))
+  }
+  return false
+}
+
+/** @param {string} dir */
+function isReady(dir) {
+  try {
+    const lines = fs.readFileSync(path.join(dir, 'postmaster.pid'), 'utf8').split('\n')
+    return lines[7]?.trim() === 'ready'
+  } catch {
+    return false
+  }
 }
 
 /**

@@ -9,6 +9,8 @@ import { co2PpmOf, finishPublishers, type Publisher, startPublishers } from '@/t
 const publisherCount = 20
 const everyMs = 30
 const seed = Number(process.env.KILL_SEED ?? Math.floor(Math.random() * 1e9))
+/** Each takes about half a minute; a busy machine is given time. */
+const limitMs = 300_000
 const pause = (ms: number) => new Promise((resolve) => setTimeout(resolve, ms))
 
 let cluster: Awaited<ReturnType<typeof startThrowAwayCluster>>
@@ -170,65 +172,62 @@ const sum = (publishers: readonly Publisher[], of: (publisher: Publisher) => num
   publishers.reduce((total, publisher) => total + of(publisher), 0)
 
 describe('under load of twenty publisher processes', () => {
-  it('kill -9 of broker, backends and postmaster at random loses no acknowledged reading', async () => {
-    console.log(`kill test: KILL_SEED=${seed}`)
-    const random = randomFrom(seed)
-    const publishers = await startTwenty('weir', 10)
-    const startedMs = Date.now()
-    const names = Object.keys(killers)
-    const done: string[] = []
-    // each kind once in a random order, then by chance, until 15 s are over
-    const order = names.map((name) => ({ name, at: random() })).sort((a, b) => a.at - b.at)
-    for (let round = 0; Date.now() - startedMs < 15_000 || round < names.length; round++) {
-      await pause(300 + random() * 2200)
-      const name = order[round]?.name ?? names[Math.floor(random() * names.length)]!
-      done.push(name)
-      await killers[name]!(random)
-    }
-    const seconds = (Date.now() - startedMs) / 1000
-    const sent = sum(publishers, (publisher) => publisher.sent)
-    await finishPublishers(publishers, 60_000)
-    const acknowledged = sum(publishers, (publisher) => publisher.acknowledged.size)
-    console.log(`${done.join(', ')}: ${sent} sent in ${seconds.toFixed(0)} s, ${acknowledged} acknowledged`)
-    expect(sent / seconds).toBeGreaterThanOrEqual(500)
-    await expectNothingLost(publishers)
-    expect(sum(publishers, (publisher) => publisher.waiting)).toBe(0)
-    expect(acknowledged).toBe(sum(publishers, (publisher) => publisher.sent))
-  })
+  it(
+    'kill -9 of broker, backends and postmaster at random loses no acknowledged reading',
+    async () => {
+      console.log(`kill test: KILL_SEED=${seed}`)
+      const random = randomFrom(seed)
+      const publishers = await startTwenty('weir', 10)
+      const startedMs = Date.now()
+      const names = Object.keys(killers)
+      const done: string[] = []
+      // each kind once in a random order, then by chance, until 15 s are over
+      const order = names.map((name) => ({ name, at: random() })).sort((a, b) => a.at - b.at)
+      for (let round = 0; Date.now() - startedMs < 15_000 || round < names.length; round++) {
+        await pause(300 + random() * 2200)
+        const name = order[round]?.name ?? names[Math.floor(random() * names.length)]!
+        done.push(name)
+        await killers[name]!(random)
+      }
+      const seconds = (Date.now() - startedMs) / 1000
+      const sent = sum(publishers, (publisher) => publisher.sent)
+      await finishPublishers(publishers, 60_000)
+      const acknowledged = sum(publishers, (publisher) => publisher.acknowledged.size)
+      console.log(`${done.join(', ')}: ${sent} sent in ${seconds.toFixed(0)} s, ${acknowledged} acknowledged`)
+      expect(sent / seconds).toBeGreaterThanOrEqual(500)
+      await expectNothingLost(publishers)
+      expect(sum(publishers, (publisher) => publisher.waiting)).toBe(0)
+      expect(acknowledged).toBe(sum(publishers, (publisher) => publisher.sent))
+    },
+    limitMs,
+  )
 
-  it('PostgreSQL frozen, then stopped, each for three keep-alives: nothing is lost and every sensor is up to date', async () => {
-    const keepaliveS = 3
-    const publishers = await startTwenty('lock', keepaliveS)
-    const pid = postmasterPid()
-    const all = [pid, ...childrenOf(pid)]
-    for (const each of all) signal(each, 'SIGSTOP')
-    await pause(3000 * keepaliveS)
-    for (const each of all) signal(each, 'SIGCONT')
-    const before = sum(publishers, (publisher) => publisher.acknowledged.size)
-    for (let tries = 0; tries < 300 && sum(publishers, (p) => p.acknowledged.size) < before + 2000; tries++)
-      await pause(50)
-    await cluster.stop().catch(() => undefined)
-    const running = postmasterPidIfAny()
-    if (running) signal(running, 'SIGINT')
-    while (running && isAlive(running)) await pause(20)
-    await pause(3000 * keepaliveS)
-    await cluster.restart()
-    await pause(1000)
-    await finishPublishers(publishers, 60_000)
-    await expectNothingLost(publishers)
-    expect(sum(publishers, (publisher) => publisher.acknowledged.size)).toBe(
-      sum(publishers, (publisher) => publisher.sent),
-    )
-    const log = [...output, broker?.output()].join('')
-    expect(log).toContain('the database takes no readings')
-    expect(log).toContain('the database takes readings again')
-  })
+  it(
+    'PostgreSQL frozen, then stopped, each for three keep-alives: nothing is lost and every sensor is up to date',
+    async () => {
+      const keepaliveS = 3
+      const publishers = await startTwenty('lock', keepaliveS)
+      const pid = postmasterPid()
+      const all = [pid, ...childrenOf(pid)]
+      for (const each of all) signal(each, 'SIGSTOP')
+      await pause(3000 * keepaliveS)
+      for (const each of all) signal(each, 'SIGCONT')
+      const before = sum(publishers, (publisher) => publisher.acknowledged.size)
+      for (let tries = 0; tries < 300 && sum(publishers, (p) => p.acknowledged.size) < before + 2000; tries++)
+        await pause(50)
+      await cluster.stop()
+      await pause(3000 * keepaliveS)
+      await cluster.restart()
+      await pause(1000)
+      await finishPublishers(publishers, 60_000)
+      await expectNothingLost(publishers)
+      expect(sum(publishers, (publisher) => publisher.acknowledged.size)).toBe(
+        sum(publishers, (publisher) => publisher.sent),
+      )
+      const log = [...output, broker?.output()].join('')
+      expect(log).toContain('the database takes no readings')
+      expect(log).toContain('the database takes readings again')
+    },
+    limitMs,
+  )
 })
-
-function postmasterPidIfAny(): number | undefined {
-  try {
-    return postmasterPid()
-  } catch {
-    return undefined
-  }
-}
