@@ -1,3 +1,4 @@
+import { spawn } from 'node:child_process'
 import fs from 'node:fs'
 import os from 'node:os'
 import path from 'node:path'
@@ -102,4 +103,48 @@ it('says so, and keeps its readings, when the broker refuses a secret', async ()
   expect(troubles[0]).toMatch(/broker refused sm-105/)
   expect(wrong.waiting).toBe(1)
   await wrong.end(500)
+})
+
+it('as a process: fills what is missing, publishes on, beats, and ends in order on SIGTERM', async () => {
+  await Promise.all(clients.map((client) => client?.end(1000)))
+  clients = []
+  const child = spawn(process.execPath, ['--import', 'tsx', 'ingest/simulator/live.ts'], {
+    env: {
+      ...process.env,
+      DATABASE_URL: db.appUrl,
+      EBBMARK_DATA_DIR: dataDir,
+      MQTT_HOST: '127.0.0.1',
+      MQTT_PORT: String(broker.port),
+    },
+    stdio: ['ignore', 'pipe', 'pipe', 'ipc'],
+  })
+  let output = ''
+  child.stdout?.on('data', (chunk) => (output += chunk))
+  child.stderr?.on('data', (chunk) => (output += chunk))
+  const ended = new Promise<number | null>((resolve) => child.once('exit', resolve))
+  const isReady = await Promise.race([
+    new Promise<boolean>((resolve) => child.once('message', () => resolve(true))),
+    ended.then(() => false),
+  ])
+  expect(isReady, output).toBe(true)
+  const readyAt = new Date()
+  // no gap: of a sensor that reports (sm-105 is the silent one), no two readings lie further apart than its radio may be away
+  const gaps = await rows<{ device: string }>(
+    db.database,
+    `SELECT s.device_id AS device FROM sensors s, LATERAL (SELECT r.at - lag(r.at) OVER (ORDER BY r.at) AS gap
+       FROM readings r WHERE r.sensor_id = s.id) g WHERE g.gap > interval '75 minutes' AND s.device_id <> 'sm-105'`,
+  )
+  expect(gaps).toEqual([])
+  const fresh = await eventually(
+    () =>
+      rows<{ n: number }>(db.database, 'SELECT count(*)::int AS n FROM readings WHERE at > $1', [readyAt]),
+    (found) => (found[0]?.n ?? 0) > 2,
+    60_000,
+  )
+  expect(fresh[0]!.n).toBeGreaterThan(2)
+  const beats = () => rows(db.database, `SELECT id FROM worker_heartbeats WHERE kind = 'demo'`)
+  expect(await beats()).toHaveLength(1)
+  child.kill('SIGTERM')
+  expect(await ended, output).toBe(0)
+  expect(await beats()).toHaveLength(0)
 })
