@@ -6,6 +6,8 @@ import type { TestSensor } from './broker'
 export type Publisher = {
   sensor: TestSensor
   salt: number
+  /** instant of its reading 0, epoch milliseconds */
+  baseMs: number
   sent: number
   waiting: number
   acknowledged: Set<number>
@@ -32,7 +34,15 @@ export function startPublishers(
         stdio: ['ignore', 'ignore', 'inherit', 'ipc'],
       },
     )
-    const publisher: Publisher = { sensor, salt, sent: 0, waiting: 0, acknowledged: new Set(), child }
+    const publisher: Publisher = {
+      sensor,
+      salt,
+      baseMs: options.baseMs,
+      sent: 0,
+      waiting: 0,
+      acknowledged: new Set(),
+      child,
+    }
     child.on('message', (message: { sent: number; acknowledged: number[]; waiting: number }) => {
       publisher.sent = message.sent
       publisher.waiting = message.waiting
