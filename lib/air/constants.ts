@@ -25,8 +25,9 @@ export const DETECTION = {
   leastDropPpm: 70,
   /** nothing is read across a silence longer than this, seconds */
   silenceS: 2700,
-  /** most bins in one fit */
-  fitBins: 90,
+  /** bins of a fit: the first is so small a part of the fall, and each is wider than the last by this share of the time gone by */
+  fitBins: 200,
+  binGrowth: 0.035,
 } as const
 
 /**

@@ -4,7 +4,7 @@ import { indexAt } from './clean'
 import type { Binned } from './piecewise'
 
 /**
- * Means of the readings in bins of `widthS` from `fromS` to `toS`; empty bins are left out, never filled. Times are hours from `originS`, at the
+ * Means of the readings in bins of `widthS` (growing by `growth` times the elapsed time: a decay is steep at first and flat later) from `fromS` to `toS`; empty bins are left out, never filled. Times are hours from `originS`, at the
  * mean instant of the readings. The mean of an exponential over a bin is the exponential times a constant, so the rate is unharmed.
  */
 export function binRecord(
@@ -13,18 +13,20 @@ export function binRecord(
   toS: number,
   widthS: number,
   originS: number,
+  growth = 0,
 ): Binned {
   const timeH: number[] = []
   const ppm: number[] = []
   const sdPpm: number[] = []
   let i = indexAt(record.timeS, fromS)
+  let endS = fromS
   while (i < record.timeS.length && record.timeS[i]! <= toS) {
-    const bin = Math.floor((record.timeS[i]! - fromS) / widthS)
+    while (endS <= record.timeS[i]!) endS += widthS + growth * (endS - fromS)
     let count = 0
     let sumT = 0
     let sum = 0
     while (i < record.timeS.length && record.timeS[i]! <= toS) {
-      if (Math.floor((record.timeS[i]! - fromS) / widthS) !== bin) break
+      if (record.timeS[i]! >= endS) break
       sumT += record.timeS[i]! - originS
       sum += record.ppm[i]!
       count++

@@ -6,12 +6,22 @@
 import { MIXING } from '@/lib/air/constants'
 import type { Binned, PiecewiseFit } from './piecewise'
 
-/** Bins with standard deviations on the long-run scale. `widthS` is the time between bins. */
-export function withMixing(data: Binned, backgroundPpm: number, widthS: number): Binned {
-  const phi = Math.exp(-widthS / MIXING.correlationS)
-  const share = MIXING.share * Math.sqrt((1 + phi) / (1 - phi))
-  const sdPpm = data.sdPpm.map((sd, i) => Math.hypot(sd, share * Math.max(0, data.ppm[i]! - backgroundPpm)))
+/** Bins with standard deviations on the long-run scale; a bin is as wide as the time to the next. */
+export function withMixing(data: Binned, backgroundPpm: number): Binned {
+  const n = data.timeH.length
+  const sdPpm = data.sdPpm.map((sd, i) => {
+    const k = Math.min(i, n - 2)
+    const widthS = k >= 0 ? 3600 * (data.timeH[k + 1]! - data.timeH[k]!) : MIXING.correlationS
+    const phi = Math.exp(-Math.min(widthS, 3600) / MIXING.correlationS)
+    const share = MIXING.share * Math.sqrt((1 + phi) / (1 - phi)) * averaging(widthS / MIXING.correlationS)
+    return Math.hypot(sd, share * Math.max(0, data.ppm[i]! - backgroundPpm))
+  })
   return { ...data, sdPpm }
+}
+
+/** What is left of a bin's slow noise beyond independent bins when the bin is wider than its correlation time. */
+function averaging(widths: number): number {
+  return widths <= 1 ? 1 : Math.sqrt(2 / (1 + widths))
 }
 
 export type Scale = {

@@ -88,28 +88,7 @@ function blankWork(size: number, n: number): Work {
   }
 }
 
-/** One row of derivatives at time t into `work.row`; returns the model's excess. */
-function deriveRow(work: Work, t: number, weight: number, p: Float64Array, edges: Float64Array): number {
-  const { row } = work
-  const rates = edges.length - 1
-  let exponent = p[0]!
-  for (let k = 0; k < rates; k++) {
-    const start = edges[k]!
-    const end = edges[k + 1]!
-    const spent = t <= start ? 0 : t < end ? t - start : end - start
-    row[k + 1] = -spent
-    exponent -= p[k + 1]! * spent
-  }
-  const excess = Math.exp(Math.min(exponent, LARGEST_EXPONENT))
-  const weighted = excess * weight
-  row[0] = weighted
-  for (let k = 1; k <= rates; k++) row[k]! *= weighted
-  row[rates + 1] = weight
-  row[rates + 2] = weight * t
-  return excess
-}
-
-/** One pass over the readings: residuals, normal matrix and gradient at the parameters. */
+/** One pass over the readings: residuals, normal matrix and gradient at the parameters. Written out flat: it is nearly all of the time. */
 function accumulate(
   data: Binned,
   edges: Float64Array,
@@ -118,25 +97,49 @@ function accumulate(
   work: Work,
 ): void {
   const size = p.length
-  const { normal, gradient, residuals, row } = work
-  normal.fill(0)
-  gradient.fill(0)
+  const rates = size - 3
   const b = size - 2
   const d = size - 1
+  const { normal, gradient, residuals, row } = work
+  const { timeH, ppm, sdPpm } = data
+  normal.fill(0)
+  gradient.fill(0)
   let chi = 0
-  for (let i = 0; i < data.timeH.length; i++) {
-    const t = data.timeH[i]!
-    const weight = 1 / data.sdPpm[i]!
-    const excess = deriveRow(work, t, weight, p, edges)
-    const residual = (data.ppm[i]! - p[b]! - p[d]! * t - excess) * weight
+  for (let i = 0; i < timeH.length; i++) {
+    const t = timeH[i]!
+    const weight = 1 / sdPpm[i]!
+    let exponent = p[0]!
+    let reached = 1
+    for (let k = 0; k < rates; k++) {
+      const start = edges[k]!
+      if (t <= start && k > 0) break
+      const spent = Math.min(t, edges[k + 1]!) - start
+      row[k + 1] = spent
+      exponent -= p[k + 1]! * spent
+      reached = k + 1
+    }
+    const excess = Math.exp(Math.min(exponent, LARGEST_EXPONENT))
+    const residual = (ppm[i]! - p[b]! - p[d]! * t - excess) * weight
     residuals[i] = residual
     chi += residual * residual
-    for (let a = 0; a < size; a++) {
+    const weighted = excess * weight
+    row[0] = weighted
+    for (let k = 1; k <= reached; k++) row[k]! *= -weighted
+    // rates not reached yet have no derivative: only the first `reached` of them enter
+    for (let a = 0; a <= reached; a++) {
       const ra = row[a]!
-      if (ra === 0) continue
       gradient[a]! += ra * residual
-      for (let c = 0; c <= a; c++) normal[a * size + c]! += ra * row[c]!
+      const line = a * size
+      for (let c = 0; c <= a; c++) normal[line + c]! += ra * row[c]!
+      normal[b * size + a]! += weight * ra
+      normal[d * size + a]! += weight * t * ra
     }
+    const square = weight * weight
+    gradient[b]! += weight * residual
+    gradient[d]! += weight * t * residual
+    normal[b * size + b]! += square
+    normal[d * size + b]! += square * t
+    normal[d * size + d]! += square * t * t
   }
   if (prior) chi += pull(work, b, size, prior.ppm - p[b]!, prior.sdPpm)
   chi += pull(work, d, size, -p[d]!, prior?.driftSdPpmPerHour ?? STILL)
@@ -174,6 +177,7 @@ function solve(
   first: Float64Array,
   prior: Prior | null,
   iterations: number,
+  tolerance: number,
 ) {
   const size = first.length
   let p = first
@@ -201,14 +205,14 @@ function solve(
     work = trial
     trial = spare
     damping = damping < 1e-7 ? 0 : damping / 10
-    if (gain < 1e-5 * (1 + work.chiSquared)) break
+    if (gain < tolerance * (1 + work.chiSquared)) break
   }
   return { p, work }
 }
 
 /**
  * Fits the rates between the given breaks. `prior` null leaves the background free and still. Returns null when there are fewer readings than
- * unknowns or the normal matrix is singular (the readings do not determine the rates).
+ * unknowns or the normal matrix is singular (the readings do not determine the rates). `tolerance` is the relative gain in chi squared that ends it.
  */
 export function fitPiecewise(
   data: Binned,
@@ -217,6 +221,7 @@ export function fitPiecewise(
   prior: Prior | null,
   start: Start,
   iterations = 25,
+  tolerance = 1e-6,
 ): PiecewiseFit | null {
   const n = data.timeH.length
   const size = breaksH.length + 4
@@ -228,7 +233,7 @@ export function fitPiecewise(
     start.driftPpmPerHour ?? 0,
   ])
   const edges = Float64Array.from([fromH, ...breaksH, Number.POSITIVE_INFINITY])
-  const solved = solve(data, edges, first, prior, iterations)
+  const solved = solve(data, edges, first, prior, iterations, tolerance)
   if (!solved) return null
   const { p, work } = solved
   const covariance = invertSymmetric(work.normal, size)

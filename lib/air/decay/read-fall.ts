@@ -40,7 +40,10 @@ export function usefulEnd(record: CleanRecord, fall: Fall, background: Backgroun
 /** A fall's readings in bins, with the noise that mixing brings, from its start (the origin of time) to `toS`. */
 export function fallBins(record: CleanRecord, fall: Fall, toS: number, background: Background): Binned {
   const width = Math.max(record.stepS, (toS - fall.fromS) / DETECTION.fitBins)
-  return withMixing(binRecord(record, fall.fromS, toS, width, fall.fromS), background.ppm, width)
+  return withMixing(
+    binRecord(record, fall.fromS, toS, width, fall.fromS, DETECTION.binGrowth),
+    background.ppm,
+  )
 }
 
 /**
@@ -55,7 +58,6 @@ function driftFor(data: Binned, backgroundPpm: number): number {
 /** Reads one fall with a background. Null when it holds too few readings to say anything. */
 export function readFall(record: CleanRecord, fall: Fall, background: Background): FallReading | null {
   const toS = usefulEnd(record, fall, background)
-  const width = Math.max(record.stepS, (toS - fall.fromS) / DETECTION.fitBins)
   const data = fallBins(record, fall, toS, background)
   if (data.timeH.length < 4) return null
   const prior = {
@@ -63,7 +65,7 @@ export function readFall(record: CleanRecord, fall: Fall, background: Background
     sdPpm: background.standardUncertaintyPpm,
     driftSdPpmPerHour: driftFor(data, background.ppm),
   }
-  const leastH = Math.max((2.5 * width) / 3600, 0.06)
+  const leastH = Math.max((2.5 * record.stepS) / 3600, 0.06)
   const segmented = segmentFall(data, prior, leastH)
   if (!segmented) return null
   const endH = data.timeH[data.timeH.length - 1]!

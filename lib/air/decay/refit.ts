@@ -134,7 +134,7 @@ export function refitDecay(input: RefitInput): Refit {
   if (!(toS - fromS >= SHORTEST_S)) return nothing(input, ['too-short'], 0)
   const record = cleanRecord(nearby(input.series, fromS, toS), input.sensor)
   const width = Math.max(record.stepS, (toS - fromS) / DETECTION.fitBins)
-  const raw = binRecord(record, fromS, toS, width, fromS)
+  const raw = binRecord(record, fromS, toS, width, fromS, DETECTION.binGrowth)
   if (raw.timeH.length < 4) return nothing(input, ['too-few-points'], raw.timeH.length)
   const background: Background = input.background ?? {
     ppm: DEFAULT_OUTDOOR.ppm,
@@ -146,7 +146,7 @@ export function refitDecay(input: RefitInput): Refit {
     sdPpm: Math.max(BACKGROUND.leastPpm, background.standardUncertaintyPpm),
     driftSdPpmPerHour: BACKGROUND.driftPpmPerHour,
   }
-  const data = withMixing(raw, background.ppm, width)
+  const data = withMixing(raw, background.ppm)
   const reading = readingOf(record, data, prior, input)
   if (!reading) return nothing(input, ['too-slow'], raw.timeH.length)
   return refitOf(input, reading, record, background)

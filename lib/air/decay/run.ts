@@ -56,7 +56,7 @@ function changeInterval(data: Binned, fit: PiecewiseFit, prior: Prior, index: nu
       if (direction > 0 ? t <= reach : t >= reach) continue
       const breaks = fit.breaksH.map((b, j) => (j === index ? t : b))
       if (breaks.some((b, j) => j > 0 && b <= breaks[j - 1]!)) break
-      const trial = fitPiecewise(data, fit.fromH, breaks, prior, start, 6)
+      const trial = fitPiecewise(data, fit.fromH, breaks, prior, start, 4, 1e-2)
       reach = t
       if (!trial || trial.chiSquared > limit) break
     }

@@ -3,6 +3,9 @@ import { invertSymmetric } from '@/lib/math/linear'
 import { longRunScale, type Scale } from './noise'
 import { type Binned, fitPiecewise, type PiecewiseFit, type Prior, roughStart, startFrom } from './piecewise'
 
+/** Relative gain in chi squared that is enough while breaks are looked for. */
+const EXPLORING = 1e-3
+
 export type Segmented = { fit: PiecewiseFit; scale: Scale }
 
 const MAX_BREAKS = 3
@@ -82,7 +85,7 @@ function refit(
   const edges = [like.fromH, ...sorted, data.timeH[data.timeH.length - 1]!]
   const rates = edges.slice(1).map((end, k) => rateAt((edges[k]! + end) / 2))
   const start = { ...startFrom(like), ratesPerHour: rates }
-  return fitPiecewise(data, like.fromH, sorted, prior, start, iterations)
+  return fitPiecewise(data, like.fromH, sorted, prior, start, iterations, EXPLORING)
 }
 
 function apart(breaksH: readonly number[], candidate: number, data: Binned, leastH: number): boolean {
@@ -91,9 +94,15 @@ function apart(breaksH: readonly number[], candidate: number, data: Binned, leas
 }
 
 /** Moves each break along the bins while chi squared falls. */
-function slideBreaks(data: Binned, fit: PiecewiseFit, prior: Prior | null, leastH: number): PiecewiseFit {
+function slideBreaks(
+  data: Binned,
+  fit: PiecewiseFit,
+  prior: Prior | null,
+  leastH: number,
+  firstStride = 3,
+): PiecewiseFit {
   let best = fit
-  let stride = Math.max(1, Math.round(data.timeH.length / 25))
+  let stride = firstStride
   for (let round = 0; round < 12; round++) {
     let moved = false
     for (let k = 0; k < best.breaksH.length; k++) {
@@ -103,7 +112,7 @@ function slideBreaks(data: Binned, fit: PiecewiseFit, prior: Prior | null, least
         if (candidate === undefined) continue
         const others = best.breaksH.filter((_, i) => i !== k)
         if (!apart(others, candidate, data, leastH)) continue
-        const trial = refit(data, [...others, candidate], prior, best, 8)
+        const trial = refit(data, [...others, candidate], prior, best, 4)
         if (trial && trial.chiSquared < best.chiSquared - 1e-6) {
           best = trial
           moved = true
@@ -157,14 +166,38 @@ function slightChange({ ratesPerHour }: PiecewiseFit): boolean {
   })
 }
 
+/** Breaks are looked for in pairs of bins when there are many. */
+const COARSE_BINS = 90
+
+/** Neighbouring bins joined in pairs: deviations are on the long-run scale, so two count as two. */
+function paired(data: Binned): Binned {
+  const n = data.timeH.length >> 1
+  const half = (values: Float64Array) =>
+    Float64Array.from({ length: n }, (_, i) => (values[2 * i]! + values[2 * i + 1]!) / 2)
+  return {
+    timeH: half(data.timeH),
+    ppm: half(data.ppm),
+    sdPpm: half(data.sdPpm).map((sd) => sd / Math.SQRT2),
+  }
+}
+
+function onFineBins(fine: Binned, coarse: PiecewiseFit, prior: Prior, leastH: number): Segmented | null {
+  const start = startFrom(coarse)
+  const fit = fitPiecewise(fine, fine.timeH[0]!, coarse.breaksH, prior, start)
+  if (!fit) return null
+  const best = fit.breaksH.length > 0 ? slideBreaks(fine, fit, prior, leastH, 1) : fit
+  return { fit: best, scale: longRunScale(best, fine) }
+}
+
 /** Splits a fall at the instants where its rate changes. Null when not even one rate can be fitted. */
 export function segmentFall(
-  data: Binned,
+  fine: Binned,
   prior: Prior,
   leastH: number,
   maxBreaks = MAX_BREAKS,
 ): Segmented | null {
-  if (data.timeH.length < 4) return null
+  if (fine.timeH.length < 4) return null
+  const data = fine.timeH.length > (2 * COARSE_BINS) / 1.5 ? paired(fine) : fine
   const first = fitPiecewise(data, data.timeH[0]!, [], prior, roughStart(data, prior.ppm))
   if (!first) return null
   const ladder = [first]
@@ -195,5 +228,5 @@ export function segmentFall(
     if (lost > asked * (slightChange(fit) ? SLIGHT_FACTOR : 1)) break
     fit = slid
   }
-  return { fit, scale: longRunScale(fit, data) }
+  return onFineBins(fine, fit, prior, leastH)
 }
