@@ -81,27 +81,34 @@ async function main(): Promise<void> {
     )
   })
   mill.start()
-  process.send?.({ ready: true })
   onStop(async () => {
     keepState(dataDir, demo.birth, mill.stop())
     await Promise.all(clients.map((client) => client?.end(STOP_WITHIN_MS)))
     await stopBeating()
     await database.close()
   })
+  process.send?.({ ready: true })
 }
 
-/** Ends in order on the first signal; a second one does not wait. */
+/** Ends in order on the first signal, or when the process that started this one has gone; a second signal does not wait. */
 function onStop(stop: () => Promise<void>): void {
   let isStopping = false
-  const end = () => {
-    if (isStopping) process.exit(1)
+  const begin = () => {
+    if (isStopping) return
     isStopping = true
     stop().then(
       () => process.exit(0),
       () => process.exit(1),
     )
   }
-  for (const signal of ['SIGTERM', 'SIGINT'] as const) process.on(signal, end)
+  let signals = 0
+  for (const signal of ['SIGTERM', 'SIGINT'] as const)
+    process.on(signal, () => {
+      signals += 1
+      if (signals > 1) process.exit(1)
+      begin()
+    })
+  process.on('disconnect', begin)
 }
 
 main().catch((error: Error) => {

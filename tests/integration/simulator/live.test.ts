@@ -1,4 +1,4 @@
-import { spawn } from 'node:child_process'
+import { type ChildProcess, spawn } from 'node:child_process'
 import fs from 'node:fs'
 import os from 'node:os'
 import path from 'node:path'
@@ -19,6 +19,7 @@ let dataDir: string
 let broker: BrokerProcess
 let demo: SeededDemo
 let clients: (SensorClient | null)[] = []
+let child: ChildProcess | undefined
 const startMs = (Math.floor(Date.now() / 60_000) - MINUTES - 5) * 60_000
 
 beforeAll(async () => {
@@ -28,6 +29,7 @@ beforeAll(async () => {
   broker = await startBroker({ appUrl: db.appUrl })
 })
 afterAll(async () => {
+  child?.kill('SIGKILL')
   await Promise.all(clients.map((client) => client?.end(1000)))
   await broker?.end('SIGTERM')
   await db?.drop()
@@ -108,7 +110,7 @@ it('says so, and keeps its readings, when the broker refuses a secret', async ()
 it('as a process: fills what is missing, publishes on, beats, and ends in order on SIGTERM', async () => {
   await Promise.all(clients.map((client) => client?.end(1000)))
   clients = []
-  const child = spawn(process.execPath, ['--import', 'tsx', 'ingest/simulator/live.ts'], {
+  child = spawn(process.execPath, ['--import', 'tsx', 'ingest/simulator/live.ts'], {
     env: {
       ...process.env,
       DATABASE_URL: db.appUrl,
@@ -121,9 +123,9 @@ it('as a process: fills what is missing, publishes on, beats, and ends in order 
   let output = ''
   child.stdout?.on('data', (chunk) => (output += chunk))
   child.stderr?.on('data', (chunk) => (output += chunk))
-  const ended = new Promise<number | null>((resolve) => child.once('exit', resolve))
+  const ended = new Promise<number | null>((resolve) => child?.once('exit', resolve))
   const isReady = await Promise.race([
-    new Promise<boolean>((resolve) => child.once('message', () => resolve(true))),
+    new Promise<boolean>((resolve) => child?.once('message', () => resolve(true))),
     ended.then(() => false),
   ])
   expect(isReady, output).toBe(true)
