@@ -116,10 +116,11 @@ function widen(location: number | null, limit: number, commonSd: number, side: -
 const rateOrNull = (ln: number | null) => (ln !== null && Number.isFinite(ln) ? Math.exp(ln) : null)
 
 /**
- * Typical rate of the days, 1/h, with a 95 % interval, from the estimates of ONE mode. Several decays of a day are first combined to
- * that day. On ln(rate): six days and more by Hodges–Lehmann with the exact signed-rank interval, three to five by Student t with a
- * floor under the scatter, fewer with an assumed scatter. The day-to-day scatter stays in the interval. From eight days on, days that
- * resemble the day before widen it. Background, gain and the caller's common terms are added afterwards and never averaged down. Days known only as bounds enter as bounds.
+ * Typical rate of the days, 1/h, with a 95 % interval, from the estimates of ONE mode. Several decays of a day are first combined
+ * to that day. On ln(rate): six days and more by Hodges–Lehmann with the exact signed-rank interval, three to five by Student t
+ * with a floor under the scatter, fewer with an assumed scatter. The day-to-day scatter stays in the interval. From eight days on,
+ * days that resemble the day before widen it. Background, gain and the caller's common terms are added afterwards and never
+ * averaged down. Days known only as bounds enter as bounds.
  * @returns null when no estimate can be used
  * @source Hodges & Lehmann 1963; GUM (JCGM 100) for the common terms; small-sample floors are engineering choices
  */

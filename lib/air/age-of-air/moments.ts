@@ -17,18 +17,6 @@ export type CurveMoments = Moments & {
   jumpDoubt: number
 }
 
-/** Plain trapezoid rule over the samples, for comparison. */
-export function trapezoidMoments(timeS: readonly number[], share: readonly number[]): Moments {
-  let mu0 = 0
-  let mu1 = 0
-  for (let i = 1; i < timeS.length; i++) {
-    const h = timeS[i]! - timeS[i - 1]!
-    mu0 += (h / 2) * (share[i - 1]! + share[i]!)
-    mu1 += (h / 2) * (timeS[i - 1]! * share[i - 1]! + timeS[i]! * share[i]!)
-  }
-  return { mu0, mu1 }
-}
-
 /** One interval: exponential between well-measured falling values (exact for mixing at any step), linear elsewhere. */
 function intervalMoments(t1: number, t2: number, f1: number, f2: number, floor: number): Moments {
   const h = t2 - t1
