@@ -29,3 +29,28 @@ export function invertSymmetric(matrix: Float64Array, n: number): Float64Array |
   }
   return inverse
 }
+
+/** Solves a symmetric positive definite n x n system by Cholesky, in place of the right-hand side; false when it is not positive definite. */
+export function solveSymmetric(matrix: Float64Array, rightHandSide: Float64Array, n: number): boolean {
+  for (let i = 0; i < n; i++) {
+    for (let j = 0; j <= i; j++) {
+      let sum = matrix[i * n + j]!
+      for (let k = 0; k < j; k++) sum -= matrix[i * n + k]! * matrix[j * n + k]!
+      if (i === j) {
+        if (!(sum > 1e-14 * Math.abs(matrix[i * n + i]!))) return false
+        matrix[i * n + i] = Math.sqrt(sum)
+      } else matrix[i * n + j] = sum / matrix[j * n + j]!
+    }
+  }
+  for (let i = 0; i < n; i++) {
+    let sum = rightHandSide[i]!
+    for (let k = 0; k < i; k++) sum -= matrix[i * n + k]! * rightHandSide[k]!
+    rightHandSide[i] = sum / matrix[i * n + i]!
+  }
+  for (let i = n - 1; i >= 0; i--) {
+    let sum = rightHandSide[i]!
+    for (let k = i + 1; k < n; k++) sum -= matrix[k * n + i]! * rightHandSide[k]!
+    rightHandSide[i] = sum / matrix[i * n + i]!
+  }
+  return true
+}

@@ -2,7 +2,10 @@
 
 import { DEFAULT_SENSOR, PLAUSIBLE_PPM } from '@/lib/air/constants'
 import type { SensorSpec, Series } from '@/lib/air/types'
-import { median, quantile } from '@/lib/math/robust'
+import { median, quantile, quantileSorted } from '@/lib/math/robust'
+
+/** Statistics of a long record are taken from about so many of its readings. */
+const SAMPLED = 500
 
 export type Interval = { fromS: number; toS: number }
 
@@ -55,7 +58,8 @@ function sortedUnique(series: Series): { timeS: number[]; ppm: number[]; clashes
 export function seenResolution(ppm: ArrayLike<number>, declared?: number): number {
   if (declared && declared > 0) return declared
   const steps: number[] = []
-  for (let i = 1; i < ppm.length; i++) {
+  const stride = Math.max(1, Math.floor(ppm.length / SAMPLED))
+  for (let i = 1; i < ppm.length; i += stride) {
     const d = Math.abs(ppm[i]! - ppm[i - 1]!)
     if (d > 1e-6) steps.push(d)
   }
@@ -65,12 +69,15 @@ export function seenResolution(ppm: ArrayLike<number>, declared?: number): numbe
 /** Standard deviation of a reading from second differences (a straight course drops out), never below what the resolution costs. */
 export function readingNoise(ppm: ArrayLike<number>, resolutionPpm: number): number {
   const second: number[] = []
-  for (let i = 1; i + 1 < ppm.length; i++) second.push(Math.abs(ppm[i + 1]! - 2 * ppm[i]! + ppm[i - 1]!))
+  const stride = Math.max(1, Math.floor(ppm.length / SAMPLED))
+  for (let i = 1; i + 1 < ppm.length; i += stride)
+    second.push(Math.abs(ppm[i + 1]! - 2 * ppm[i]! + ppm[i - 1]!))
   const quantised = resolutionPpm / Math.sqrt(12)
   if (second.length < 10) return Math.max(3, quantised)
   // a coarse resolution makes the median zero; the 84th percentile of |d| is one deviation for a normal variable too
-  const byMedian = (1.4826 * median(second)) / Math.sqrt(6)
-  const byTail = quantile(second, 0.6827) / Math.sqrt(6)
+  const sorted = Float64Array.from(second).sort()
+  const byMedian = (1.4826 * quantileSorted(sorted, 0.5)) / Math.sqrt(6)
+  const byTail = quantileSorted(sorted, 0.6827) / Math.sqrt(6)
   return Math.max(byMedian, Math.min(byTail, 2 * resolutionPpm), quantised, 0.7)
 }
 
@@ -106,7 +113,11 @@ function dropSpikes(timeS: number[], ppm: number[], sigma: number): number {
 /** Stretches where one value repeats for so long that the sensor, not the air, must stand still. */
 function stuckStretches(timeS: number[], ppm: number[], resolution: number, sigma: number): Interval[] {
   const found: Interval[] = []
-  const floor = quantile(ppm, 0.05)
+  const stride = Math.max(1, Math.floor(ppm.length / SAMPLED))
+  const floor = quantile(
+    ppm.filter((_, i) => i % stride === 0),
+    0.05,
+  )
   let start = 0
   for (let i = 1; i <= ppm.length; i++) {
     if (i < ppm.length && Math.abs(ppm[i]! - ppm[start]!) < 1e-9) continue
@@ -157,7 +168,9 @@ export function cleanRecord(series: Series, sensor: SensorSpec = {}): CleanRecor
   const stuck = onChange ? [] : stuckStretches(timeS, ppm, resolutionPpm, sigmaPpm)
   without(timeS, ppm, stuck)
   const spikes = onChange ? 0 : dropSpikes(timeS, ppm, sigmaPpm)
-  const steps = timeS.slice(1).map((t, i) => t - timeS[i]!)
+  const stride = Math.max(1, Math.floor(timeS.length / SAMPLED))
+  const steps: number[] = []
+  for (let i = 1; i < timeS.length; i += stride) steps.push(timeS[i]! - timeS[i - 1]!)
   return {
     timeS: Float64Array.from(timeS),
     ppm: Float64Array.from(ppm),

@@ -5,7 +5,7 @@
  * derivatives. The background B and its slope D are unknowns with priors N(B0, uB) and N(0, uD), for outdoor air and a sensor's zero move over
  * an evening; so what is not known of them reaches the rates.
  */
-import { invertSymmetric } from '@/lib/math/linear'
+import { invertSymmetric, solveSymmetric } from '@/lib/math/linear'
 
 /** Binned readings: time in hours from the window's origin, mean ppm, standard deviation of that mean. */
 export type Binned = { timeH: Float64Array; ppm: Float64Array; sdPpm: Float64Array }
@@ -157,17 +157,10 @@ function pull(work: Work, index: number, size: number, distance: number, sd: num
 }
 
 function moveFrom(work: Work, size: number, damping: number): Float64Array | null {
-  const damped = Float64Array.from(work.normal)
+  const damped = work.normal.slice()
   for (let a = 0; a < size; a++) damped[a * size + a]! *= 1 + damping
-  const inverse = invertSymmetric(damped, size)
-  if (!inverse) return null
-  const move = new Float64Array(size)
-  for (let a = 0; a < size; a++) {
-    let sum = 0
-    for (let b = 0; b < size; b++) sum += inverse[a * size + b]! * work.gradient[b]!
-    move[a] = sum
-  }
-  return move
+  const move = work.gradient.slice()
+  return solveSymmetric(damped, move, size) ? move : null
 }
 
 /** Gauss-Newton with Levenberg's damping; returns the parameters and the pass made at them, or null when nothing is determined. */
@@ -192,7 +185,8 @@ function solve(
       if (damping > 1e6) return null
       continue
     }
-    const next = Float64Array.from(p, (value, a) => value + move[a]!)
+    const next = move
+    for (let a = 0; a < size; a++) next[a]! += p[a]!
     accumulate(data, edges, next, prior, trial)
     if (!(trial.chiSquared <= work.chiSquared)) {
       damping = Math.max(1e-3, damping * 10)
