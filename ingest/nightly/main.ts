@@ -16,6 +16,7 @@ async function main(): Promise<void> {
     ownerUrl: DATABASE_OWNER_URL ?? DATABASE_DIRECT_URL ?? DATABASE_URL,
     database: database(),
     clock: systemClock,
+    log: log(),
     mailer: mailer(),
     publicUrl: publicUrl(),
   })

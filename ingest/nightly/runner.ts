@@ -7,9 +7,9 @@ import {
   type TaskList,
   type WorkerEvents,
 } from 'graphile-worker'
+import type { Logger as Log } from 'pino'
 import { endHeartbeat } from '@/db/changes/heartbeats'
 import type { JobTask } from '@/db/changes/jobs'
-import { log } from '@/lib/server/log'
 import { startHeartbeat } from './heartbeat'
 import type { Job, JobContext, ScheduledJob } from './job'
 import { queuedJobs, scheduledJobs } from './jobs'
@@ -18,6 +18,7 @@ import { schedule } from './schedule'
 export type RunnerOptions = Omit<JobContext, 'attempt' | 'stopped'> & {
   /** the owner's address: the queue's schema is not the application's */
   ownerUrl: string
+  log: Log
   concurrency?: number
   /** without the schedule only what is queued runs: for tests */
   scheduled?: boolean
@@ -31,29 +32,34 @@ export type JobRunner = {
   ended: Promise<void>
 }
 
+type Base = Omit<JobContext, 'attempt'> & { log: Log }
+
 type Helpers = { job: { attempts: number; max_attempts: number } }
 
-const contextFor = (base: Omit<JobContext, 'attempt'>, { job }: Helpers): JobContext => ({
+const contextFor = ({ log: _, ...base }: Base, { job }: Helpers): JobContext => ({
   ...base,
   attempt: { number: job.attempts, last: job.attempts >= job.max_attempts },
 })
 
 /** A queued job as the queue's library takes it. A payload that does not parse is a final error: it is told and not tried again. */
-function queuedTask<Task extends JobTask>(job: Job<Task>, base: Omit<JobContext, 'attempt'>) {
+function queuedTask<Task extends JobTask>(job: Job<Task>, base: Base) {
   return async (payload: unknown, helpers: Helpers) => {
     const parsed = job.payload.safeParse(payload)
     if (!parsed.success) {
-      log().error({ task: job.task, payload, problems: parsed.error.issues }, 'a job has no usable payload')
+      base.log.error(
+        { task: job.task, payload, problems: parsed.error.issues },
+        'a job has no usable payload',
+      )
       return
     }
     const startedMs = Date.now()
     await job.run(parsed.data, contextFor(base, helpers))
     const told: object = { task: job.task, ...parsed.data, ms: Date.now() - startedMs }
-    log().info(told, 'job done')
+    base.log.info(told, 'job done')
   }
 }
 
-function taskList(base: Omit<JobContext, 'attempt'>): TaskList {
+function taskList(base: Base): TaskList {
   const queued = queuedJobs.map((job) => [job.task, queuedTask(job as Job<JobTask>, base)])
   const scheduled = scheduledJobs.map((job: ScheduledJob) => [
     job.task,
@@ -62,20 +68,21 @@ function taskList(base: Omit<JobContext, 'attempt'>): TaskList {
   return Object.fromEntries([...queued, ...scheduled])
 }
 
-const quiet: Record<string, 'error' | 'warn' | 'debug'> = { error: 'error', warning: 'warn' }
-const queueLogger = new Logger(() => (level, message, meta) => {
-  log()[quiet[level] ?? 'debug'](
-    { queue: meta?.error instanceof Error ? meta.error.message : undefined },
-    String(message),
-  )
-})
+const levels: Record<string, 'error' | 'warn' | 'debug'> = { error: 'error', warning: 'warn' }
+
+/** The queue's own messages in our log: errors and warnings as such, the rest for those who look for it. */
+const queueLogger = (log: Log) =>
+  new Logger(() => (level, message, meta) => {
+    const error = meta?.error instanceof Error ? meta.error : undefined
+    log[levels[level] ?? 'debug']({ err: error }, String(message))
+  })
 
 /** Starts working on the queue: jobs that wait and, by the schedule, those that time brings. Safe to run several on one database. */
 export async function startJobs(options: RunnerOptions): Promise<JobRunner> {
-  const { database, clock, mailer, publicUrl, ownerUrl } = options
+  const { database, clock, mailer, publicUrl, ownerUrl, log } = options
   let stopping = false
-  const base = { database, clock, mailer, publicUrl, stopped: () => stopping }
-  const shared = { connectionString: ownerUrl, logger: queueLogger }
+  const base = { database, clock, mailer, publicUrl, log, stopped: () => stopping }
+  const shared = { connectionString: ownerUrl, logger: queueLogger(log) }
   const utils = await makeWorkerUtils({ ...shared, maxPoolSize: 2 })
   const events: WorkerEvents = new EventEmitter()
   const pool = new Promise<string>((resolve) =>
@@ -95,7 +102,7 @@ export async function startJobs(options: RunnerOptions): Promise<JobRunner> {
     parsedCronItems: options.scheduled === false ? [] : cronItems(),
   })
   const workerId = await pool
-  const onError = (error: unknown) => log().warn({ err: error }, 'a heartbeat of the job runner was lost')
+  const onError = (error: unknown) => log.warn({ err: error }, 'a heartbeat of the job runner was lost')
   const endBeat = await startHeartbeat({ database, clock, utils, workerId, onError })
   return {
     workerId,

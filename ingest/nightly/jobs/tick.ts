@@ -31,7 +31,8 @@ async function queueNights(tx: Tx, building: Building, dates: readonly string[],
 
 async function queueDigests(tx: Tx, building: Building, nowS: number, finalDates: ReadonlySet<string>) {
   const weekStart = lastWholeWeek(nowS, building.timeZone)
-  if (!finalDates.has(addDays(weekStart, 6))) return
+  const nights = [0, 1, 2, 3, 4, 5, 6].map((days) => addDays(weekStart, days))
+  if (!nights.every((night) => finalDates.has(night))) return
   if (!(await hasDigestsToWrite(tx, { buildingId: building.id, weekStart }))) return
   const payload = { buildingId: building.id, weekStart }
   await queueJob(tx, { task: 'write-digests', payload, onlyIfAbsent: true })

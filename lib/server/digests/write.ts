@@ -15,13 +15,15 @@ export type WriteDigests = {
   mails: boolean
 }
 
-/** Writes the digests that a building's week still lacks, each with its queued mail in one transaction. Returns their public ids. */
+/** Writes the digests that a building's week still lacks, each with its queued mail in one transaction. None while a night of it is missing. Returns their public ids. */
 export async function writeDigests(options: WriteDigests): Promise<string[]> {
   const { database, clock, buildingId, weekStart, mails } = options
   return database.asSystem('write digests', async (tx) => {
     const missing = await tenanciesWithoutDigest(tx, { buildingId, weekStart })
     if (missing.length === 0) return []
     const material = await weekMaterial(tx, { buildingId, weekStart })
+    // a letter about a week of which nights are missing would claim too much
+    if (material.runs.length < 7) return []
     const written: string[] = []
     for (const tenancy of missing) {
       const content = buildDigest(material, tenancy)
