@@ -45,6 +45,9 @@ const ASSUMED_DAY_SCATTER_DOF = 2
 /** Smallest day-to-day scatter of ln(rate) believed of three to five days (engineering choice). */
 const LEAST_DAY_SCATTER = 0.05
 
+/** What no number of days removes: mixing is never complete and no gain quite straight (standard uncertainty of ln(rate), chosen). */
+const LEAST_COMMON_SD = 0.01
+
 /** Half-width on ln(rate) of a 95 % interval for the typical day, from fewer than six days. */
 function smallSampleHalfWidth(days: readonly DayRate[], sd: number | null): number {
   const n = days.length
@@ -134,6 +137,7 @@ export function combineDays(
   const located = locate(days, sd)
   const backgroundSd = median(days.map((day) => day.backgroundSdLn))
   const commonSdLn = Math.hypot(
+    LEAST_COMMON_SD,
     backgroundSd,
     options.gainRelativeUncertainty ?? 0,
     ...(options.commonRelativeUncertainties ?? []),
