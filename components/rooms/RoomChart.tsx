@@ -64,7 +64,7 @@ export function RoomChart(props: RoomChartProps) {
   }, [view, zoom.data, series, newest])
   const toS = view || !newest ? series.toS : Math.max(series.toS, newest[0])
   const spec = useMemo(
-    () => roomChartSpec(shown, decays, supply, limitPpm),
+    () => roomChartSpec(shown, decays, supply, limitPpm, props.rates),
     [shown, decays, supply, limitPpm],
   )
   const axis = useMemo(() => roomChartAxis(series, limitPpm), [series, limitPpm])
@@ -77,7 +77,7 @@ export function RoomChart(props: RoomChartProps) {
     <section className="mt-12 max-sm:mt-9">
       <FigureHead title="CO2, ppm" beside={<Picks label="Range" choices={props.ranges} />} />
       <TimeChart
-        label={`CO2 in ${props.roomName}, with limit ${spaced(limitPpm)} ppm and outdoor level. ${decayCaption(decays)}`}
+        label={`CO2 in ${props.roomName}, with limit ${spaced(limitPpm)} ppm and outdoor level. ${decayCaption(decays, props.rates)}`}
         spec={spec}
         axis={axis}
         fromS={series.fromS}
@@ -89,7 +89,7 @@ export function RoomChart(props: RoomChartProps) {
         table={table}
       />
       <p className="mt-1 text-2 text-ink-3">
-        {decayCaption(decays)}{' '}
+        {decayCaption(decays, props.rates)}{' '}
         <span className="pointer-coarse:hidden">Drag over the chart to look closer.</span>
       </p>
     </section>

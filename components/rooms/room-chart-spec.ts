@@ -1,6 +1,6 @@
 import type { ChartSpec, ChartTableData, Line, ValueAxis } from '@/components/charts/types'
 import { zonedStamp } from '@/lib/format/clock'
-import { counted, sentenceCase } from '@/lib/format/counts'
+import { counted, countWord, sentenceCase } from '@/lib/format/counts'
 import type { SupplySpan } from '@/lib/format/supply-spans'
 import { intervalWords, rateText } from '@/lib/format/verdict'
 import type { ChartPoint, RoomDecay, RoomSeries } from '@/lib/wire/rooms'
@@ -34,6 +34,7 @@ export function roomChartSpec(
   decays: readonly RoomDecay[],
   supply: readonly SupplySpan[],
   limitPpm: number,
+  rates: boolean,
 ): ChartSpec {
   return {
     lines: [
@@ -48,7 +49,7 @@ export function roomChartSpec(
     })),
     lanes: [
       {
-        label: 'decays',
+        label: rates ? 'decays' : 'emptying',
         items: decays.map((decay) => ({
           look: isKept(decay) ? 'kept' : 'left out',
           fromS: decay.startS,
@@ -69,14 +70,18 @@ export function roomChartAxis(series: RoomSeries, limitPpm: number): ValueAxis {
   return { low: Math.floor(lowest / 100) * 100, high: Math.ceil((highest * 1.06) / 200) * 200 }
 }
 
-/** "Twelve decays found: eleven kept (hatched), one left out (pale)." */
-export function decayCaption(decays: readonly RoomDecay[]): string {
-  if (decays.length === 0) return 'No decay found in this time.'
+/** "Twelve decays found: eleven kept (hatched), one left out (pale hatch)."; for tenants in words without decays. */
+export function decayCaption(decays: readonly RoomDecay[], rates: boolean): string {
   const kept = decays.filter(isKept).length
+  if (!rates)
+    return kept === 0
+      ? 'The room was not seen emptying in this time.'
+      : `Hatched: the room emptying after people left, ${counted(kept, 'time')}.`
+  if (decays.length === 0) return 'No decay found in this time.'
   const left = decays.length - kept
   const parts = [
-    kept > 0 && `${counted(kept, 'kept', 'kept')} (hatched)`,
-    left > 0 && `${counted(left, 'left out', 'left out')} (pale hatch)`,
+    kept > 0 && `${countWord(kept)} kept (hatched)`,
+    left > 0 && `${countWord(left)} left out (pale hatch)`,
   ]
   return `${sentenceCase(counted(decays.length, 'decay'))} found: ${parts.filter(Boolean).join(', ')}.`
 }
@@ -108,13 +113,13 @@ export function readingsTable(
   })
   return {
     caption: 'CO2 by stretches of time',
-    columns: ['From', 'Lowest, ppm', 'Highest, ppm', rates ? 'Decays begun, rate per hour' : 'Decays begun'],
+    columns: ['From', 'Lowest, ppm', 'Highest, ppm', rates ? 'Decays begun, rate per hour' : 'Emptied'],
     rows,
   }
 }
 
 function decayCell(decay: RoomDecay, rates: boolean): string {
-  if (decay.quality === 'refused') return 'left out'
-  if (!rates) return 'kept'
+  if (decay.quality === 'refused') return rates ? 'left out' : ''
+  if (!rates) return 'yes'
   return decay.rate === null ? intervalWords(decay.rateLow, decay.rateHigh, rateText) : rateText(decay.rate)
 }

@@ -56,7 +56,11 @@ function rateWords(name: string, found: RoomVerdictRow): string {
   return `${when}, ${name} gets ${rate} air changes an hour (${inside}).`
 }
 
+/** Reasons whose own sentence already holds the flow and the basis. */
+const saysFlow = new Set(['interval-spans-basis', 'only-bounds'])
+
 function flowWords(found: RoomVerdictRow): string {
+  if (saysFlow.has(found.reason ?? '')) return ''
   if (found.flowLps === null || found.basisFlowLps === null) return ''
   const interval = intervalWords(found.flowLowLps, found.flowHighLps, flowText)
   return ` That is ${flowText(found.flowLps)} L/s of outdoor air (${interval}); its basis asks for ${flowText(found.basisFlowLps)}.`
