@@ -147,7 +147,7 @@ function weighPeople({ input, falls }: Prepared): Weighed[] {
     const before = quiet ? PEOPLE.beforeQuiet : PEOPLE.beforeDay
     return (room.reading?.readings ?? []).map((entry) => {
       const evidence = shapeEvidence(entry, room.reading!.prior, input.room.volumeM3)
-      return { entry, room, evidence, before }
+      return { entry, room, evidence, before: entry.piece.slowFirst ? PEOPLE.beforeSlow : before }
     })
   })
   const sure = weighed.filter(
@@ -158,6 +158,9 @@ function weighPeople({ input, falls }: Prepared): Weighed[] {
       .filter((other) => other.entry !== own.entry)
       .map((other) => other.entry.piece.ratePerHour)
     const known = [...others, ...(input.history?.recentRates ?? [])]
+    // people who leave one by one look like a slow decay too: its shape alone never makes it sure
+    if (own.entry.piece.slowFirst)
+      return { ...own, evidence: Math.min(own.evidence, PEOPLE.mostSlowEvidence) }
     return { ...own, evidence: own.evidence + rateEvidence(own.entry, known) }
   })
 }

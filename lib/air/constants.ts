@@ -70,12 +70,14 @@ export const BACKGROUND = {
 } as const
 
 /**
- * Somebody inside (chosen): how likely before the readings are weighed, when the room fills again within hours and when it stays quiet; and the
+ * Somebody inside (chosen): how likely before the readings are weighed, when the room fills again within hours, when it stays quiet, and when it ebbs faster afterwards; and the
  * probabilities from which a figure is doubtful, or not given.
  */
 export const PEOPLE = {
   beforeDay: 0.5,
   beforeQuiet: 0.12,
+  beforeSlow: 0.93,
+  mostSlowEvidence: 4,
   quietS: 4 * 3600,
   doubtful: 0.04,
   refused: 0.6,

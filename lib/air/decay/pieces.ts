@@ -10,6 +10,8 @@ export type Piece = {
   startExcessPpm: number
   endExcessPpm: number
   role: Role
+  /** slower than what follows, yet long enough to be a decay of its own: somebody inside, or a supply that rose later */
+  slowFirst?: boolean
 }
 
 /** The pieces of a fit with the standard deviation of each rate, correlated residuals counted. */
@@ -46,6 +48,11 @@ function longAndFalling(piece: Piece): boolean {
   return hours(piece) >= 3 && piece.ratePerHour - 2 * piece.sdPerHour > 0.015
 }
 
+/** Long and steep enough for its own shape to tell whether the room was empty. */
+function longEnough(piece: Piece): boolean {
+  return hours(piece) >= 0.75 && piece.ratePerHour * hours(piece) >= 0.55
+}
+
 /** Gives every piece its role. `floorPpm` is the excess below which a piece says nothing of a rate. */
 export function assignRoles(pieces: Piece[], floorPpm: number): Piece[] {
   const result = pieces.map((piece) => ({ ...piece }))
@@ -64,8 +71,10 @@ function markLeading(pieces: Piece[]): void {
     const next = pieces[k + 1]!
     if (next.role === 'floor') break
     if (own.role === 'people') continue
-    if (slower(own, next) && !longAndFalling(own)) own.role = 'people'
-    else if (hours(own) < 0.15 && own.ratePerHour * hours(own) < 0.35 && slower(next, own))
+    if (slower(own, next) && !longAndFalling(own)) {
+      if (longEnough(own)) own.slowFirst = true
+      else own.role = 'people'
+    } else if (hours(own) < 0.15 && own.ratePerHour * hours(own) < 0.35 && slower(next, own))
       own.role = 'settling'
     else break
   }
@@ -88,13 +97,13 @@ function markBumps(pieces: Piece[], floorPpm: number): void {
   }
 }
 
-/** Runs of neighbouring empty pieces: each is one window, a change of rate inside it. */
+/** Runs of neighbouring empty pieces: each is one window, a change of rate inside it. A slow first piece stands alone, to be judged by itself. */
 export function emptyRuns(pieces: readonly Piece[]): { from: number; to: number }[] {
   const runs: { from: number; to: number }[] = []
   pieces.forEach((piece, k) => {
     if (piece.role !== 'empty') return
     const last = runs[runs.length - 1]
-    if (last && last.to === k - 1) last.to = k
+    if (last && last.to === k - 1 && !pieces[k - 1]!.slowFirst) last.to = k
     else runs.push({ from: k, to: k })
   })
   return runs

@@ -55,6 +55,18 @@ function driftFor(data: Binned, backgroundPpm: number): number {
   return Math.hypot(BACKGROUND.zeroDriftPpmPerHour, (BACKGROUND.driftPpmPerHour * rate) / (rate + 0.35))
 }
 
+/** A slow first window and the faster one after it share the instant of the change, known to about the spacing of breaks. */
+function linkRises(readings: Reading[], leastH: number): void {
+  readings.forEach((own, k) => {
+    const next = readings[k + 1]
+    if (!own.piece.slowFirst || !next) return
+    const atS = own.breakAtS
+    const change = { atS, lowS: atS - leastH * 3600, highS: atS + leastH * 3600 }
+    own.changeAtEnd = change
+    next.changeAtStart = change
+  })
+}
+
 /** Reads one fall with a background. Null when it holds too few readings to say anything. */
 export function readFall(record: CleanRecord, fall: Fall, background: Background): FallReading | null {
   const toS = usefulEnd(record, fall, background)
@@ -77,6 +89,7 @@ export function readFall(record: CleanRecord, fall: Fall, background: Background
     const openEnd = run.to === pieces.length - 1 && pieces[run.to]!.endExcessPpm > 2 * floorPpm
     readings.push(...readRun({ data, pieces: own, prior, originS: fall.fromS, stepS: record.stepS, openEnd }))
   }
+  linkRises(readings, leastH)
   const firstEmpty = pieces.findIndex((piece) => piece.role === 'empty')
   const left = firstEmpty >= 0 ? fall.fromS + pieces[firstEmpty]!.fromH * 3600 : null
   return { fall, lastPersonLeftS: left, readings, peopleInside: firstEmpty < 0, pieces, data, prior }

@@ -118,6 +118,7 @@ function readingOf(record: CleanRecord, data: Binned, prior: Prior, input: Refit
       endExcessPpm: startExcessPpm * Math.exp(-rate * (endH - data.timeH[0]!)),
       role: 'empty',
     },
+    breakAtS: input.toS,
     index: 0,
     estimate: rateEstimate(weighed, 0, residualSd(data, fit), record.stepS),
     fit,

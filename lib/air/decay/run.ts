@@ -29,6 +29,8 @@ export type Reading = {
   fromS: number
   toS: number
   piece: Piece
+  /** where the last piece of the run ended before it was trimmed */
+  breakAtS: number
   /** which rate of the fit */
   index: number
   estimate: RateEstimate
@@ -156,6 +158,7 @@ export function readRun(run: Run): Reading[] {
     fromS: originS + piece.fromH * 3600,
     toS: originS + (k === fitted.length - 1 ? usedUntil(piece) : piece.toH) * 3600,
     piece,
+    breakAtS: originS + lastH * 3600,
     index: k,
     estimate: rateEstimate(weighed, k, residualSd(part, weighed.fit), stepS),
     fit: weighed.fit,
@@ -209,6 +212,7 @@ function demandReading(
     fromS: originS + fromH * 3600,
     toS: originS + occupiedEnd(demand, fromH, toH) * 3600,
     piece,
+    breakAtS: originS + toH * 3600,
     index: 0,
     estimate: {
       ...estimate,
