@@ -74,7 +74,7 @@ export function logSpec(
         ]
       : [],
     ...(curve ? { band: { timeS: curve.timeS, low: above(curve.lowPpm), high: above(curve.highPpm) } } : {}),
-    levels: [{ look: 'floor', value: 50, label: 'floor, 50 ppm', labelInside: true }],
+    levels: [{ look: 'floor', value: 50, label: '50 ppm' }],
   }
 }
 

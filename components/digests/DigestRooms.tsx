@@ -38,7 +38,8 @@ function RoomLine({ room }: { room: DigestRoom }) {
           <p className="text-2 text-ink-3">not known yet</p>
         ) : (
           <p>
-            <b className={cx('text-5', short && 'text-silt-ink')}>{room.supportsPersons}</b> people
+            <b className={cx('text-5', short && 'text-silt-ink')}>{room.supportsPersons}</b>{' '}
+            {room.supportsPersons === 1 ? 'person' : 'people'}
           </p>
         )}
         {room.plannedFor !== null && <p className="text-2 text-ink-3">planned for {room.plannedFor}</p>}
