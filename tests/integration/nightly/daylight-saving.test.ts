@@ -9,7 +9,7 @@ import { dates, makeMeasuredBuilding, samplesOf, storeSamples } from '@/tests/su
 const TIME_ZONE = 'Europe/Berlin'
 const HOUR_S = 3600
 
-/** People until half past midnight, the supply all day long: the decays lie across the change of the clocks at 02:00 and 03:00. */
+/** People until half past one, the supply all day long: the decays lie across the change of the clocks at 02:00 and 03:00. */
 const lateRooms = [
   {
     number: '0.01',
@@ -18,7 +18,7 @@ const lateRooms = [
     rateOnPerHour: 0.9,
     rateOffPerHour: 0.9,
     designHeadcount: 10,
-    dayPlan: { peopleFrom: '20:00', peopleTo: '00:30', persons: 20, nextDay: true },
+    dayPlan: { peopleFrom: '20:00', peopleTo: '01:30', persons: 20, nextDay: true },
   },
   {
     number: '0.02',
@@ -27,7 +27,7 @@ const lateRooms = [
     rateOnPerHour: 1.5,
     rateOffPerHour: 1.5,
     designHeadcount: 6,
-    dayPlan: { peopleFrom: '20:00', peopleTo: '00:30', persons: 12, nextDay: true },
+    dayPlan: { peopleFrom: '20:00', peopleTo: '01:30', persons: 12, nextDay: true },
   },
 ]
 
@@ -39,9 +39,9 @@ afterAll(() => test.drop())
 
 // Berlin 2026: 29 March 02:00 becomes 03:00 (23 h), 25 October 03:00 becomes 02:00 (25 h)
 describe.each([
-  { change: '2026-03-29', hours: 23, slug: 'spring' },
-  { change: '2026-10-25', hours: 25, slug: 'autumn' },
-])('the night of $change, a day of $hours hours', ({ change, hours, slug }) => {
+  { change: '2026-03-29', hours: 23, changesAfterH: 2, slug: 'spring' },
+  { change: '2026-10-25', hours: 25, changesAfterH: 3, slug: 'autumn' },
+])('the night of $change, a day of $hours hours', ({ change, hours, changesAfterH, slug }) => {
   it('is as long as it is', () => {
     const window = nightWindow(change, TIME_ZONE)
     expect((window.dayEndS - window.dayStartS) / HOUR_S).toBe(hours)
@@ -77,7 +77,7 @@ describe.each([
         .from(schema.decays)
         .where(and(eq(schema.decays.buildingId, building.buildingId), isNull(schema.decays.supersededAt))),
     )
-    // people leave at 00:30 of the day of the change: the decay belongs to that local date
+    // people leave at 01:30 of the day of the change: the decay belongs to that local date
     const window = nightWindow(change, TIME_ZONE)
     const changed = rows.filter(
       (row) =>
@@ -90,7 +90,8 @@ describe.each([
       const room = building.rooms.find((one) => one.id === row.roomId)!
       expect(row.airChangeRatePerHour! / room.rateOnPerHour, room.name).toBeGreaterThan(0.9)
       expect(row.airChangeRatePerHour! / room.rateOnPerHour, room.name).toBeLessThan(1.1)
-      expect(row.endAt.getTime() / 1000).toBeGreaterThan(window.dayStartS + 3 * HOUR_S)
+      expect(row.startAt.getTime() / 1000).toBeLessThan(window.dayStartS + changesAfterH * HOUR_S)
+      expect(row.endAt.getTime() / 1000).toBeGreaterThan(window.dayStartS + changesAfterH * HOUR_S)
     }
     // no instant is told twice: windows of neighbouring nights overlap, the decays they own do not
     for (const room of building.rooms) {
