@@ -26,6 +26,8 @@ export async function registerSensor(
   { buildingId, form, now }: { buildingId: number; form: SensorForm; now: Date },
 ): Promise<{ deviceId: string; secret: string }> {
   const { secret, sha256 } = newSensorSecret()
+  // a reading without a time counts to the second, and device clocks lag a little: the place begins with the minute
+  const fromAt = new Date(Math.floor(now.getTime() / 60_000) * 60_000)
   const roomId = form.roomId === undefined ? null : await requireRoom(tx, buildingId, form.roomId)
   const key = deviceIdKey(form.deviceId)
   const [sensor] = await tx
@@ -59,7 +61,7 @@ export async function registerSensor(
     )
   }
   const lead = form.lead && roomId !== null && form.position === 'room'
-  if (lead) await endEarlierLead(tx, roomId, now)
+  if (lead) await endEarlierLead(tx, roomId, fromAt)
   await tx.insert(placements).values({
     organizationId: actor.organizationId,
     buildingId,
@@ -67,7 +69,7 @@ export async function registerSensor(
     roomId,
     position: form.position,
     lead,
-    fromAt: now,
+    fromAt,
   })
   await addAuditEvent(tx, {
     ...actor,
@@ -89,17 +91,25 @@ export async function registerSensor(
 }
 
 /** The room's lead so far stays where it hangs, but no longer leads; what it led until now is kept. */
-async function endEarlierLead(tx: Tx, roomId: number, now: Date): Promise<void> {
+async function endEarlierLead(tx: Tx, roomId: number, at: Date): Promise<void> {
   const [earlier] = await tx
     .update(placements)
-    .set({ toAt: now })
+    .set({ toAt: sql`greatest(${placements.fromAt}, ${at.toISOString()}::timestamptz)` })
     .where(and(eq(placements.roomId, roomId), eq(placements.lead, true), isNull(placements.toAt)))
     .returning()
   if (!earlier) return
   const { organizationId, buildingId, sensorId, position } = earlier
   await tx
     .insert(placements)
-    .values({ organizationId, buildingId, sensorId, roomId, position, lead: false, fromAt: now })
+    .values({
+      organizationId,
+      buildingId,
+      sensorId,
+      roomId,
+      position,
+      lead: false,
+      fromAt: earlier.toAt ?? at,
+    })
 }
 
 async function requireRoom(tx: Tx, buildingId: number, publicId: string): Promise<number> {
