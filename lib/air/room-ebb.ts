@@ -17,7 +17,7 @@ const LEAST_EXCESS_PPM = 40
 const LOOK_BACK_S = 20 * 60
 const LEAST_RECENT_FALL_SHARE = 0.03
 /** With people still in the room the fall bends towards their level: its second half is then far slower than its first. */
-const LEAST_STRAIGHTNESS = 0.4
+const LEAST_STRAIGHTNESS = 0.55
 const MARK_EVERY_S = 600
 
 /** Centred mean over five minutes. */
