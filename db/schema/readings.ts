@@ -4,14 +4,14 @@ import { sensors } from './sensors'
 
 /**
  * What sensors said, never changed. In the database the table is partitioned by UTC month (see the first migration).
- * `marked` is 1 where co2_ppm lies outside 350 to 5000; `importId` lets an upload be undone.
+ * Columns stand by size, widest first, so that no row is padded. `marked` is 1 where co2_ppm lies outside 350 to 5000; `importId` lets an upload be undone.
  */
 export const readings = pgTable(
   'readings',
   {
-    sensorId: integer('sensor_id').notNull(),
     at: instant('at').notNull(),
     receivedAt: instant('received_at').notNull().defaultNow(),
+    sensorId: integer('sensor_id').notNull(),
     co2Ppm: real('co2_ppm').notNull(),
     tempC: real('temp_c'),
     rhPct: real('rh_pct'),
