@@ -193,6 +193,7 @@ function finish(day: BuildingDay, prepared: Prepared, stops: SupplyStop[]): Room
           mode,
           people,
           demandRoom,
+          floorsAgree: opened.floorsAgree,
         }),
       )
     }

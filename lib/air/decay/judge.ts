@@ -8,7 +8,7 @@ import type { Reading } from './run'
 
 export type Verdict = { kind: EstimateKind; quality: Quality; reasons: Reason[]; checks: Check[] }
 
-export type Suspicion = { doubts: Reason[]; refusals: Reason[] }
+export type Suspicion = { doubts: Reason[]; refusals: Reason[]; floorsAgree: boolean }
 
 const overlaps = (interval: Interval, fromS: number, toS: number) =>
   interval.fromS < toS && interval.toS > fromS
@@ -140,7 +140,9 @@ export function judgeReading(
   } else doubts.push(kind === 'at-least' ? 'too-fast' : 'too-slow')
   if (!gapCheck) (gap > 0.6 ? refusals : doubts).push('gap')
   // a false zero cancels where the room's own resting level is the background, and does not where it is not
-  if (!floor && background.origin !== 'own record') doubts.push('sensor-suspect')
+  const cancels =
+    background.origin === 'own record' && (suspicion.floorsAgree || background.ppm < PLAUSIBLE_FLOOR_PPM.low)
+  if (!floor && !cancels) doubts.push('sensor-suspect')
   if (record.stuck.some((cut) => overlaps(cut, reading.fromS, reading.toS))) doubts.push('sensor-suspect')
   if (record.clockClashes.some((t) => t >= reading.fromS - 3600 && t <= reading.toS)) doubts.push('clock')
   if (record.saturated.some((cut) => overlaps(cut, reading.fromS + 1, reading.toS))) doubts.push('saturated')

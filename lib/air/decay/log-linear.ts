@@ -5,13 +5,23 @@
 import { lagOneCorrelation } from '@/lib/math/autocorrelation'
 
 /** Rate (1/h) from two levels: ln(E1 / E2) / T. NaN when an excess is not positive. */
-export function twoPointRate(firstPpm: number, lastPpm: number, backgroundPpm: number, hours: number): number {
+export function twoPointRate(
+  firstPpm: number,
+  lastPpm: number,
+  backgroundPpm: number,
+  hours: number,
+): number {
   const ratio = (firstPpm - backgroundPpm) / (lastPpm - backgroundPpm)
   return ratio > 0 && firstPpm > backgroundPpm ? Math.log(ratio) / hours : Number.NaN
 }
 
 /** Rate (1/h) and final level (ppm) from three equally spaced levels; serves decay and build-up alike, and needs no background. */
-export function threePointRate(c1: number, c2: number, c3: number, stepHours: number): { ratePerHour: number; finalPpm: number } {
+export function threePointRate(
+  c1: number,
+  c2: number,
+  c3: number,
+  stepHours: number,
+): { ratePerHour: number; finalPpm: number } {
   const ratio = (c3 - c2) / (c2 - c1)
   return {
     ratePerHour: ratio > 0 ? -Math.log(ratio) / stepHours : Number.NaN,
@@ -35,7 +45,12 @@ export type LogLine = {
  * Straight line through ln(C - B) by (weighted) least squares; the ordinary standard error. Readings at or below the background have no logarithm
  * and make this throw: they must be cut off before, never dropped silently.
  */
-export function logLine(timeH: ArrayLike<number>, ppm: ArrayLike<number>, backgroundPpm: number, weightByExcess = false): LogLine {
+export function logLine(
+  timeH: ArrayLike<number>,
+  ppm: ArrayLike<number>,
+  backgroundPpm: number,
+  weightByExcess = false,
+): LogLine {
   const n = timeH.length
   if (n < 3) throw new RangeError('a line needs at least three readings')
   const y = Float64Array.from({ length: n }, (_, i) => Math.log(ppm[i]! - backgroundPpm))

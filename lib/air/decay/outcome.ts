@@ -84,12 +84,14 @@ export type Outcome = {
   people: number
   /** other decays of this room show demand control */
   demandRoom: boolean
+  /** see RoomRecord */
+  floorsAgree: boolean
 }
 
 /** Spread of a neighbour's share up to which the total rate is accepted. */
 const SURE_SHARE = 0.25
 
-function suspicionOf({ room, people, entry, demandRoom }: Outcome): Suspicion {
+function suspicionOf({ room, people, entry, demandRoom, floorsAgree }: Outcome): Suspicion {
   const doubts: Reason[] = []
   const refusals: Reason[] = []
   if (room.air === 'recirculating') doubts.push('recirculation-possible')
@@ -97,7 +99,7 @@ function suspicionOf({ room, people, entry, demandRoom }: Outcome): Suspicion {
   if (entry.coupled && entry.coupled.shareSd > SURE_SHARE) doubts.push('neighbour-coupled')
   if (people > PEOPLE.refused) refusals.push('people-present')
   else if (people > PEOPLE.doubtful) doubts.push('people-present')
-  return { doubts, refusals }
+  return { doubts, refusals, floorsAgree }
 }
 
 /** The decay of one reading: rate or bound, interval, mode, quality, reasons, checks and a sentence. */

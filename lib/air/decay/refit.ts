@@ -154,7 +154,7 @@ export function refitDecay(input: RefitInput): Refit {
 }
 
 function refitOf(input: RefitInput, reading: Reading, record: CleanRecord, background: Background): Refit {
-  const verdict = judgeReading(reading, record, background, { doubts: [], refusals: [] })
+  const verdict = judgeReading(reading, record, background, { doubts: [], refusals: [], floorsAgree: true })
   const { estimate, fit, piece } = reading
   const given = verdict.quality !== 'refused'
   const middleH = (piece.fromH + piece.toH) / 2

@@ -18,6 +18,8 @@ export type RoomRecord = {
   lowest: QuietFloor | null
   own: QuietFloor[]
   history: readonly QuietFloor[]
+  /** several nights came to rest at one level: what an empty room does, and a room with people in it does not */
+  floorsAgree: boolean
 }
 
 export type ReadFall = {
@@ -39,6 +41,9 @@ export function nightsFloor(track: Track, falls: readonly Fall[], day: DayWindow
   return resting.find((floor) => floor.atS >= fromS && floor.atS <= toS) ?? lowest
 }
 
+/** Scatter of resting levels up to which they agree, ppm (chosen). */
+const AGREEING_PPM = 14
+
 /** Opens a room's record for a day; `history` holds the floors of other nights. */
 export function openRecord(
   room: RoomSpec,
@@ -56,7 +61,16 @@ export function openRecord(
   const own = restingLevels(track, falls, lowest, day.date, history)
   const nightsLow = Math.min(...history.map((entry) => entry.ppm))
   if (lowest?.reached && own.length === 0 && lowest.ppm < nightsLow + ABOVE_OTHER_NIGHTS_PPM) own.push(lowest)
-  return { record, track, falls, lowest, own, history }
+  return { record, track, falls, lowest, own, history, floorsAgree: agree(own, history) }
+}
+
+/** Three or more resting levels on at least two nights, scattered by no more than outdoor air does. */
+function agree(own: readonly QuietFloor[], history: readonly QuietFloor[]): boolean {
+  const reached = [...own, ...history].filter((floor) => floor.reached)
+  if (reached.length < 3 || new Set(reached.map((floor) => floor.date)).size < 2) return false
+  const levels = reached.map((floor) => floor.ppm)
+  const mean = levels.reduce((sum, level) => sum + level, 0) / levels.length
+  return Math.sqrt(levels.reduce((sum, level) => sum + (level - mean) ** 2, 0) / levels.length) < AGREEING_PPM
 }
 
 export type Surroundings = {

@@ -23,6 +23,8 @@ const TRIM_SIGMAS = 2.4
 const TRIM_CONSTANTS = 0.8
 /** How much worse than steps demand control may fit and still be taken, in chi squared: the smooth law is the likelier one. */
 const DEMAND_MARGIN = 2
+/** Gain in chi squared that demand control must bring over one rate. */
+const GRADUAL_GAIN = 7
 
 /** One rate over one stretch of an empty room. */
 export type Reading = {
@@ -149,7 +151,11 @@ export function readRun(run: Run): Reading[] {
   const fit = fitRun(run, part, breaksH)
   if (!fit) return []
   const weighed = reweighed(part, fit, prior)
-  const demand = slowsDown(weighed.fit) ? demandOf(part, prior, fit) : null
+  const demand = slowsDown(weighed.fit)
+    ? demandOf(part, prior, fit)
+    : bendsDown(weighed.fit, part, prior)
+      ? gradualDemand(part, prior, fit)
+      : null
   if (demand) return [demandReading(run, part, weighed, demand)]
   const scaled = { ...part, sdPpm: part.sdPpm.map((sd) => sd * weighed.factor) }
   const changes = breaksH.map((_, k) => changeInterval(scaled, weighed.fit, prior, k, originS))
@@ -188,6 +194,25 @@ function occupiedEnd(demand: DemandFit, fromH: number, toH: number): number {
     if (demand.rateAfter(t) < 0.6 * demand.startRatePerHour) return fromH + Math.max(t, 1 / 6)
   }
   return toH
+}
+
+/** One rate fits, yet the readings would rather have it fall: worth asking whether it follows CO2. */
+function bendsDown(fit: PiecewiseFit, part: Binned, prior: Prior): boolean {
+  if (
+    fit.ratesPerHour.length > 1 ||
+    fit.ratesPerHour[0]! * (part.timeH[part.timeH.length - 1]! - part.timeH[0]!) < 1
+  )
+    return false
+  return hingeScores(part, fit, prior).some((score) => score < -2)
+}
+
+/** Demand control that a single rate hides: clearly better, and the rate falls by a third or more. */
+function gradualDemand(part: Binned, prior: Prior, one: PiecewiseFit): DemandFit | null {
+  const demand = fitDemand(part, prior, one)
+  if (!demand || demand.startRatePerHour < 1.5 * demand.endRatePerHour) return null
+  return demand.chiSquared < one.chiSquared - GRADUAL_GAIN * Math.max(1, longRunScale(one, part).variance)
+    ? demand
+    : null
 }
 
 function demandReading(
