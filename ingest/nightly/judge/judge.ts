@@ -13,8 +13,10 @@ import { type Clock, systemClock } from '@/lib/server/clock'
 import { addDays } from '@/lib/time'
 import { airSystemOf } from '../analysis/rooms'
 import { CHANGE_NIGHTS, presentSince, roomChanges } from './changes'
+import { withoutEarlyStops } from './early-stops'
 import { type JudgedEstimate, judgedEstimates } from './estimates'
 import { findAll, NIGHTLY_FINDINGS } from './findings'
+import { supplyStoppedEarly } from './findings/supply-stopped-early'
 import { roomWeek } from './room-week'
 import { suspectSensors } from './suspects'
 
@@ -32,25 +34,30 @@ export type JudgeOptions = {
 
 export type JudgeResult = { weeks: string[]; rowsChanged: number }
 
-type Material = { plan: BuildingPlan; lastNight: string; byRoom: Map<number, JudgedEstimate[]> }
+type Material = { plan: BuildingPlan; lastNight: string; all: JudgedEstimate[] }
 
-async function gather(
-  tx: Tx,
-  buildingId: number,
-  fromDate: string,
-  lastNight: string,
-): Promise<Material & { all: JudgedEstimate[] }> {
+async function gather(tx: Tx, buildingId: number, fromDate: string, lastNight: string): Promise<Material> {
   const plan = await requireBuildingPlan(tx, { buildingId })
   const span = { buildingId, fromDate: addDays(fromDate, -CHANGE_NIGHTS), toDate: lastNight }
   const decays = await leadDecaysBetween(tx, span)
   const all = judgedEstimates(decays, await standingReviews(tx, span))
+  return { plan, lastNight, all }
+}
+
+/** The estimates by room as far as they were known on a night, with the modes that hold against a supply that stops early. */
+function knownOn({ plan, all }: Material, throughNight: string): Map<number, JudgedEstimate[]> {
+  const known = all.filter((one) => one.night <= throughNight)
+  const early = supplyStoppedEarly({
+    ...{ plan, lastNight: throughNight, estimates: known, methodVersion: METHOD_VERSION },
+    ...{ runs: [], verdicts: [] },
+  })
   const byRoom = new Map<number, JudgedEstimate[]>()
-  for (const one of all) {
+  for (const one of withoutEarlyStops(plan, known, early)) {
     const own = byRoom.get(one.roomId)
     if (own) own.push(one)
     else byRoom.set(one.roomId, [one])
   }
-  return { plan, lastNight, byRoom, all }
+  return byRoom
 }
 
 /** Mondays of the weeks that nights from one date to another bear on, up to the week of the last analysed night. */
@@ -62,9 +69,10 @@ export function weeksTouched(fromDate: string, toDate: string, lastNight: string
 }
 
 /** Every room's rows of one week, as of its Sunday or of the last analysed night. */
-function judgeWeek({ plan, lastNight, byRoom }: Material, weekStart: string): NewRoomWeek[] {
-  const sunday = addDays(weekStart, 6)
-  const throughNight = sunday < lastNight ? sunday : lastNight
+function judgeWeek(material: Material, weekStart: string): NewRoomWeek[] {
+  const { plan, lastNight } = material
+  const throughNight = [addDays(weekStart, 6), lastNight].sort()[0] as string
+  const byRoom = knownOn(material, throughNight)
   return plan.rooms
     .filter((room) => room.kind === 'room')
     .flatMap((room) => {
@@ -78,13 +86,9 @@ function judgeWeek({ plan, lastNight, byRoom }: Material, weekStart: string): Ne
     })
 }
 
-async function judgeNow(
-  tx: Tx,
-  material: Material & { all: JudgedEstimate[] },
-  newest: NewRoomWeek[],
-  now: Date,
-) {
-  const { plan, lastNight, byRoom } = material
+async function judgeNow(tx: Tx, material: Material, newest: NewRoomWeek[], now: Date) {
+  const { plan, lastNight } = material
+  const byRoom = knownOn(material, lastNight)
   const ids = { buildingId: plan.building.id, methodVersion: METHOD_VERSION, now }
   const changes = plan.rooms.flatMap((room) =>
     roomChanges(room, byRoom.get(room.id) ?? [], lastNight, METHOD_VERSION),

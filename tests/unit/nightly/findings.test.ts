@@ -1,7 +1,9 @@
 import { describe, expect, it } from 'vitest'
+import type { NewFinding } from '@/db/changes/findings'
 import type { NewRoomWeek } from '@/db/changes/weeks'
 import type { BuildingPlan } from '@/db/queries/building-plan'
 import type { Carried, NightRun } from '@/db/queries/nights'
+import { withoutEarlyStops } from '@/ingest/nightly/judge/early-stops'
 import type { JudgedEstimate } from '@/ingest/nightly/judge/estimates'
 import { type FindingInput, findAll } from '@/ingest/nightly/judge/findings'
 import { addDays } from '@/lib/time'
@@ -140,7 +142,7 @@ describe('ventilated while empty', () => {
   })
 
   it('is not found where they end with the hours, nor in a room that merely leaks', () => {
-    expect(find({ estimates: evenings('19:20') })).toEqual([])
+    expect(find({ estimates: evenings('19:10') })).toEqual([])
     expect(find({ estimates: evenings('23:00', 0.5) })).toEqual([])
   })
 })
@@ -223,5 +225,25 @@ describe('sensor drifting', () => {
     expect(find({ runs: runs(() => -60) })).toEqual([])
     expect(find({ runs: runs((i) => -3 * i, 10) })).toEqual([])
     expect(find({ runs: runs((i) => -0.4 * i) })).toEqual([])
+  })
+})
+
+describe('estimates of an air handler that stops early', () => {
+  const night = '2026-06-11'
+  const early = [
+    { kind: 'supply stopped early', airHandlerId: 1, firstNight: '2026-06-08', detail: { stopsAt: '17:30' } },
+  ] as unknown as NewFinding[]
+  const modeOf = (one: JudgedEstimate) => withoutEarlyStops(plan, [one], early)[0]!.mode
+
+  it('lose the schedule’s word for what lies after the stop, and for nothing else', () => {
+    expect(modeOf(estimate(1, night, '17:40', '18:40'))).toBe('unknown')
+    expect(modeOf(estimate(1, night, '17:00', '18:00'))).toBe('unknown')
+    expect(modeOf(estimate(1, night, '16:30', '17:35'))).toBe('supply on')
+    expect(modeOf(estimate(1, night, '12:00', '13:00'))).toBe('supply on')
+    // another air handler, an earlier night, and a mode that was measured
+    expect(modeOf(estimate(3, night, '17:40', '18:40'))).toBe('supply on')
+    expect(modeOf(estimate(1, '2026-06-05', '17:40', '18:40'))).toBe('supply on')
+    expect(modeOf(estimate(1, night, '17:40', '18:40', { modeFrom: 'status' }))).toBe('supply on')
+    expect(modeOf(estimate(1, night, '17:40', '18:40', { modeFrom: 'inferred' }))).toBe('supply on')
   })
 })

@@ -6,8 +6,9 @@ import type { JudgedEstimate } from '../estimates'
 import { type FindingInput, findingOf, sinceNight } from './types'
 
 const MINUTE_MS = 60_000
-/** A decay speaks for the time after the entered end when it goes on this long beyond it. */
-const BEYOND_MS = 30 * MINUTE_MS
+/** A decay speaks for the time after the entered end when it goes on this long beyond it, and for this share of its length. */
+const BEYOND_MS = 20 * MINUTE_MS
+const LEAST_BEYOND_SHARE = 1 / 3
 /** Share of the occupied rate from which the supply is taken to run on. */
 const LEAST_SHARE = 0.6
 /** Below this a room leaks rather than is supplied, 1/h. */
@@ -32,7 +33,9 @@ function endOfSupply(input: FindingInput, airHandlerId: number, night: string): 
 function runsOn(estimate: JudgedEstimate, endMs: number, occupiedRate: number): boolean {
   const low = estimate.airChangeRateLowPerHour
   if (low === null || low < Math.max(LEAST_RATE_PER_HOUR, LEAST_SHARE * occupiedRate)) return false
-  return estimate.endAt.getTime() >= endMs + BEYOND_MS
+  const beyondMs = estimate.endAt.getTime() - Math.max(endMs, estimate.startAt.getTime())
+  const wholeMs = estimate.endAt.getTime() - estimate.startAt.getTime()
+  return beyondMs >= BEYOND_MS && beyondMs >= LEAST_BEYOND_SHARE * wholeMs
 }
 
 /** Rooms whose supply does not stop when its hours end: decays go on beyond the end at the rate of the day. */
