@@ -96,7 +96,8 @@ function suspicionOf({ room, people, entry, demandRoom, floorsAgree }: Outcome):
   const refusals: Reason[] = []
   if (room.air === 'recirculating') doubts.push('recirculation-possible')
   if (demandRoom && !entry.demand) doubts.push('demand-controlled')
-  if (entry.coupled && entry.coupled.shareSd > SURE_SHARE) doubts.push('neighbour-coupled')
+  const unsure = entry.coupled ? entry.coupled.shareSd > SURE_SHARE : room.neighbour !== undefined
+  if (unsure) doubts.push('neighbour-coupled')
   if (people > PEOPLE.refused) refusals.push('people-present')
   else if (people > PEOPLE.doubtful) doubts.push('people-present')
   return { doubts, refusals, floorsAgree }
@@ -113,7 +114,7 @@ export function decayOf(outcome: Outcome): Decay {
   if (given && (room.air === undefined || room.air === 'unknown')) reasons.push('recirculation-possible')
   if (given && entry.coupled && !reasons.includes('neighbour-coupled')) reasons.push('neighbour-coupled')
   const change = entry.changeAtEnd ?? entry.changeAtStart
-  const recirculates = given && room.air === 'recirculating'
+  const recirculates = room.air === 'recirculating'
   const decay = {
     roomId: room.id,
     night: day.date,
@@ -123,7 +124,7 @@ export function decayOf(outcome: Outcome): Decay {
     airChangeRatePerHour: rate,
     airChangeRateLowPerHour: given && verdict.kind !== 'at-most' ? estimate.lowPerHour : null,
     airChangeRateHighPerHour: given && verdict.kind !== 'at-least' ? estimate.highPerHour : null,
-    ...outdoorRange(entry, verdict.quality, recirculates),
+    ...outdoorRange(entry, verdict.quality, recirculates || room.neighbour !== undefined),
     background: {
       ppm: entry.fit.backgroundPpm,
       standardUncertaintyPpm: backgroundSd(entry),
@@ -151,9 +152,9 @@ export function decayOf(outcome: Outcome): Decay {
 }
 
 /** What comes from outdoors: from the fit with a neighbour where it is sure, else anything up to the whole. */
-function outdoorRange(entry: Reading, quality: Decay['quality'], recirculates: boolean) {
+function outdoorRange(entry: Reading, quality: Decay['quality'], mixed: boolean) {
   const { coupled, estimate } = entry
-  if (quality === 'refused' || !(coupled || recirculates))
+  if (quality === 'refused' || !(coupled || mixed))
     return { outdoorRateLowPerHour: null, outdoorRateHighPerHour: null }
   if (!coupled || quality === 'doubtful')
     return { outdoorRateLowPerHour: 0, outdoorRateHighPerHour: estimate.highPerHour }

@@ -4,7 +4,11 @@ import { demandExcess } from '@/lib/air/decay/demand'
 import { backgroundBias, logLine, threePointRate, twoPointRate } from '@/lib/air/decay/log-linear'
 import { steadyExcessPpm } from '@/lib/air/decay/people'
 import { fitPiecewise, roughStart } from '@/lib/air/decay/piecewise'
-import { biasCorrectedCorrelation, effectiveSampleSize, slopeErrorInflation } from '@/lib/math/autocorrelation'
+import {
+  biasCorrectedCorrelation,
+  effectiveSampleSize,
+  slopeErrorInflation,
+} from '@/lib/math/autocorrelation'
 import { studentTQuantile } from '@/lib/math/student-t'
 import { localToEpochS } from '@/lib/time'
 import { D1, D2, D3 } from './support/records'
@@ -12,7 +16,10 @@ import { D1, D2, D3 } from './support/records'
 const near = (value: number, expected: number, relative = 1e-5) =>
   expect(Math.abs(value - expected)).toBeLessThanOrEqual(relative * Math.abs(expected))
 
-const plain = (record: { timeH: Float64Array; ppm: Float64Array }) => ({ ...record, sdPpm: record.ppm.map(() => 1) })
+const plain = (record: { timeH: Float64Array; ppm: Float64Array }) => ({
+  ...record,
+  sdPpm: record.ppm.map(() => 1),
+})
 const known = (ppm: number) => ({ ppm, sdPpm: 1e-4 })
 
 /** Standard error of the first rate with the residual variance of the fit. */
