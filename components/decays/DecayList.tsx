@@ -63,7 +63,7 @@ function DecayLine({ decay, timeZone, max }: { decay: DecaySummary; timeZone: st
   const interval = intervalWords(decay.rateLow, decay.rateHigh)
   return (
     <Tr>
-      <Td className="whitespace-nowrap">
+      <Td className="sm:whitespace-nowrap">
         <Link href={paths.decay(decay.id)} className="plain-link">
           <span className="fig inline-block w-[44px] text-2 text-ink-3 max-sm:hidden">
             {decay.roomNumber}
@@ -71,7 +71,7 @@ function DecayLine({ decay, timeZone, max }: { decay: DecaySummary; timeZone: st
           {decay.roomName}
         </Link>
       </Td>
-      <Td className="fig text-[13px] whitespace-nowrap text-ink-2">
+      <Td className="fig text-[13px] text-ink-2 sm:whitespace-nowrap">
         {localClock(decay.startS, timeZone)}–{localClock(decay.endS, timeZone)}
       </Td>
       <Td numeric className={refused ? 'text-ink-3' : 'font-[650]'}>

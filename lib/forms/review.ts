@@ -7,8 +7,8 @@ export const reviewForm = z
     decayId: z.string().min(1),
     decision: z.enum(decisions, { error: 'Choose keep, leave out, or keep with your window.' }),
     reason: z.string().trim().max(2000, 'Keep the reason under 2000 signs.').default(''),
-    fromS: z.coerce.number().int().optional(),
-    toS: z.coerce.number().int().optional(),
+    fromS: z.coerce.number().optional(),
+    toS: z.coerce.number().optional(),
   })
   .refine((form) => form.decision === 'keep' || form.reason.length >= 3, {
     path: ['reason'],
