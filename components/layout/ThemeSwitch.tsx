@@ -1,6 +1,6 @@
 'use client'
 
-import { useState } from 'react'
+import { useId, useState } from 'react'
 import { THEME_COOKIE, THEMES, type Theme } from '@/lib/format/theme'
 
 const YEAR_S = 365 * 24 * 3600
@@ -18,6 +18,8 @@ const words: Record<Theme | 'system', string> = { system: 'as the system', light
 
 /** Light, dark, or as the reader's system asks. */
 export function ThemeSwitch({ theme }: { theme: Theme | null }) {
+  // the masthead holds this twice, for wide and narrow: each has a group of its own
+  const name = useId()
   const [chosen, setChosen] = useState<Theme | 'system'>(theme ?? 'system')
   return (
     <fieldset className="text-2">
@@ -29,7 +31,7 @@ export function ThemeSwitch({ theme }: { theme: Theme | null }) {
         >
           <input
             type="radio"
-            name="theme"
+            name={name}
             className="size-4 accent-(--tide)"
             checked={chosen === choice}
             onChange={() => {

@@ -187,7 +187,8 @@ test('two hundred streams opened and dropped, by abort or by cancel, leave nothi
   const { openStreamCount } = await import('@/lib/server/live/streams')
   const before = { subscribers: hubModule.liveHub().subscriberCount, streams: openStreamCount() }
   for (let round = 0; round < 20; round += 1) {
-    const opened = await Promise.all(Array.from({ length: 10 }, () => openStream(mill.people.engineer)))
+    const opened: Awaited<ReturnType<typeof openStream>>[] = []
+    for (let i = 0; i < 10; i += 1) opened.push(await openStream(mill.people.engineer))
     expect(hubModule.liveHub().subscriberCount).toBe(before.subscribers + 10)
     for (const [i, stream] of opened.entries()) {
       if (i % 2 === 0) stream.abort.abort()
