@@ -2,14 +2,14 @@
  * One building, one local day: every decay that starts on it, in every room, with what rooms know of each other. The nightly job, the command
  * `analyse` and the tests all call this; it reads no clock, no file and no database.
  */
-import { PEOPLE } from './constants'
+import { GATES, PEOPLE } from './constants'
 import { outdoorLevel } from './decay/background'
 import { cleanRecord } from './decay/clean'
 import { findFalls, levelTrack } from './decay/falls'
 import type { QuietFloor } from './decay/floor'
 import { modeOf, type RateDrop, type SupplyStop, sharedStops } from './decay/modes'
 import { decayOf, refusedDecay } from './decay/outcome'
-import { peopleProbability, rateEvidence, shapeEvidence } from './decay/people'
+import { peopleProbability, rateEvidence, shapeEvidence, unsupported } from './decay/people'
 import {
   type DayWindow,
   nightsFloor,
@@ -137,17 +137,24 @@ export function analyseBuildingDay(day: BuildingDay): RoomDay[] {
   return prepared.map((room) => finish(day, room, stops.get(room.input.room.airHandler ?? '') ?? []))
 }
 
-type Weighed = { entry: Reading; room: ReadFall; evidence: number; before: number }
+type Weighed = { entry: Reading; room: ReadFall; evidence: number; before: number; lonely: boolean }
 
 /** Weighs for every reading whether the room was empty; rates that are sure help to judge the others. */
 function weighPeople({ input, falls }: Prepared): Weighed[] {
+  const recent = input.history?.recentRates ?? []
   const weighed: Weighed[] = falls.flatMap((room, k) => {
     const next = falls[k + 1]
     const quiet = !next || next.fall.fromS - room.fall.toS > PEOPLE.quietS
     const before = quiet ? PEOPLE.beforeQuiet : PEOPLE.beforeDay
     return (room.reading?.readings ?? []).map((entry) => {
-      const evidence = shapeEvidence(entry, room.reading!.prior, input.room.volumeM3)
-      return { entry, room, evidence, before: entry.piece.slowFirst ? PEOPLE.beforeSlow : before }
+      const evidence = shapeEvidence(entry, room.reading!.prior, input.room.volumeM3, recent)
+      return {
+        entry,
+        room,
+        evidence,
+        before: entry.piece.slowFirst ? PEOPLE.beforeSlow : before,
+        lonely: false,
+      }
     })
   })
   const sure = weighed.filter(
@@ -157,11 +164,12 @@ function weighPeople({ input, falls }: Prepared): Weighed[] {
     const others = sure
       .filter((other) => other.entry !== own.entry)
       .map((other) => other.entry.piece.ratePerHour)
-    const known = [...others, ...(input.history?.recentRates ?? [])]
+    const known = [...others, ...recent]
+    const lonely = own.entry.piece.startExcessPpm < GATES.lonelyExcessPpm && unsupported(own.entry, known)
     // people who leave one by one look like a slow decay too: its shape alone never makes it sure
     if (own.entry.piece.slowFirst)
-      return { ...own, evidence: Math.min(own.evidence, PEOPLE.mostSlowEvidence) }
-    return { ...own, evidence: own.evidence + rateEvidence(own.entry, known) }
+      return { ...own, evidence: Math.min(own.evidence, PEOPLE.mostSlowEvidence), lonely }
+    return { ...own, evidence: own.evidence + rateEvidence(own.entry, known), lonely }
   })
 }
 
@@ -178,7 +186,7 @@ function finish(day: BuildingDay, prepared: Prepared, stops: SupplyStop[]): Room
     const own = reading?.readings ?? []
     if (own.length === 0)
       decays.push(refusedDecay({ day, room: input.room, fall, reading, background, record }))
-    for (const { entry, evidence, before } of weighed.filter((w) => own.includes(w.entry))) {
+    for (const { entry, evidence, before, lonely } of weighed.filter((w) => own.includes(w.entry))) {
       const people = peopleProbability(evidence, before)
       const mode = modeOf(input.room, entry, { supply: input.supply, stops, timeZone: day.timeZone })
       if (mode.disagrees) noteEarlyStop(notes, stops)
@@ -193,6 +201,7 @@ function finish(day: BuildingDay, prepared: Prepared, stops: SupplyStop[]): Room
           mode,
           people,
           demandRoom,
+          lonely,
           floorsAgree: opened.floorsAgree,
         }),
       )

@@ -41,6 +41,8 @@ export const GATES = {
   /** smallest excess at the start, ppm, and in standard uncertainties of the background and the noise */
   startExcessPpm: 110,
   startExcessSigmas: 8,
+  /** below this start, a rate that no other decay of the room shows is doubtful, ppm */
+  lonelyExcessPpm: 260,
   /** least fall in time constants */
   timeConstants: 0.35,
   durationS: 900,

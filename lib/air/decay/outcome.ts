@@ -84,6 +84,8 @@ export type Outcome = {
   people: number
   /** other decays of this room show demand control */
   demandRoom: boolean
+  /** a small decay at a rate that no other decay of the room shows */
+  lonely: boolean
   /** see RoomRecord */
   floorsAgree: boolean
 }
@@ -91,10 +93,11 @@ export type Outcome = {
 /** Spread of a neighbour's share up to which the total rate is accepted. */
 const SURE_SHARE = 0.25
 
-function suspicionOf({ room, people, entry, demandRoom, floorsAgree }: Outcome): Suspicion {
+function suspicionOf({ room, people, entry, demandRoom, floorsAgree, lonely }: Outcome): Suspicion {
   const doubts: Reason[] = []
   const refusals: Reason[] = []
   if (room.air === 'recirculating') doubts.push('recirculation-possible')
+  if (lonely) doubts.push('start-too-low')
   if (demandRoom && !entry.demand) doubts.push('demand-controlled')
   const unsure = entry.coupled ? entry.coupled.shareSd > SURE_SHARE : room.neighbour !== undefined
   if (unsure) doubts.push('neighbour-coupled')

@@ -20,7 +20,12 @@ export function steadyExcessPpm(sourceLps: number, ratePerHour: number, volumeM3
  * Log likelihood ratio of "empty" over "somebody inside" from the shape of one decay alone; positive speaks for empty. To first order: the rate
  * and the floor are jointly normal, and the prior on the background is taken out of the fit again.
  */
-export function shapeEvidence(reading: Reading, prior: Prior, volumeM3: number): number {
+export function shapeEvidence(
+  reading: Reading,
+  prior: Prior,
+  volumeM3: number,
+  known: readonly number[] = [],
+): number {
   const { fit, piece, index } = reading
   const size = fit.ratesPerHour.length + 3
   const b = size - 2
@@ -28,7 +33,9 @@ export function shapeEvidence(reading: Reading, prior: Prior, volumeM3: number):
   const variance = fit.covariance[b * size + b]!
   const pull = fit.covariance[a * size + b]! / variance / piece.ratePerHour
   const matters = pull > 1e-6 ? Math.log(MATTERS) / pull : 1e3
-  const onePerson = 0.7 * steadyExcessPpm(QUIET_PERSON_LPS, Math.max(0.05, piece.ratePerHour), volumeM3)
+  // with people inside the true rate is above the apparent one, and one person's lift the smaller
+  const trueRate = Math.max(2 * piece.ratePerHour, 0.05, ...known)
+  const onePerson = 0.7 * steadyExcessPpm(QUIET_PERSON_LPS, trueRate, volumeM3)
   const smallest = Math.max(matters, onePerson)
   // a level cannot ebb below the floor that a source keeps up
   if (piece.endExcessPpm < 0.75 * smallest - 2 * prior.sdPpm) return 8
@@ -54,6 +61,14 @@ export function rateEvidence(reading: Reading, known: readonly number[]): number
   }
   // with people inside, the apparent rate may lie anywhere over about one and a half in ln A
   return Math.max(-2, best + Math.log(1.5))
+}
+
+/** True when rates are known and none of them is near: a low and lonely decay is then more likely disturbed than new. */
+export function unsupported(reading: Reading, known: readonly number[]): boolean {
+  const { regression, background } = reading.estimate.parts
+  const margin = 0.12 + 2 * Math.hypot(regression, background)
+  const own = Math.log(Math.max(0.01, reading.piece.ratePerHour))
+  return known.length >= 2 && known.every((rate) => Math.abs(own - Math.log(rate)) > margin)
 }
 
 /** Probability that somebody was inside, from the evidence and how likely that is at such a time. */
