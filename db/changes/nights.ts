@@ -4,7 +4,7 @@ import { canonicalJson } from '../canonical-json'
 import type { Tx } from '../client'
 import { newPublicId } from '../public-id'
 import { type Carried, currentDecays, finishedRuns } from '../queries/nights'
-import { decayReviews, decays, lateReadings, nightRuns } from '../schema'
+import { decayReviews, decays, nightRuns } from '../schema'
 import { addAuditEvent } from './audit'
 import { notifyLive } from './notice'
 
@@ -161,8 +161,21 @@ async function moveReviews(
   return toRefit
 }
 
+const STRENGTH = { accepted: 2, doubtful: 1, refused: 0 } as const
+
+/** One decay for each sensor and start, which is what its identity allows: of two, the one that says more. */
+function oneForEachStart(rows: readonly NewDecay[]): NewDecay[] {
+  const byStart = new Map<string, NewDecay>()
+  for (const row of rows) {
+    const key = `${row.roomId} ${row.sensorId} ${row.startAt.getTime()}`
+    const other = byStart.get(key)
+    if (!other || STRENGTH[row.quality] > STRENGTH[other.quality]) byStart.set(key, row)
+  }
+  return [...byStart.values()]
+}
+
 async function storeDecays(tx: Tx, night: NightResult) {
-  const fresh = night.found.map((one) => rowOf(night, one))
+  const fresh = oneForEachStart(night.found.map((one) => rowOf(night, one)))
   const standing = await currentDecays(tx, { buildingId: night.buildingId, night: night.date })
   const { kept, added, gone } = compare(standing, fresh)
   const goneIds = gone.map((row) => row.id)
@@ -279,12 +292,12 @@ export async function storeFailedNight(
     })
 }
 
-/** Takes the marks of late readings up to `until` away: their nights are queued in the same transaction. */
+/** Takes the marks of late readings up to `until` away: their nights are queued in the same transaction, and their hours are left to be rolled up again. */
 export async function clearLateHours(
   tx: Tx,
   { buildingId, until }: { buildingId: number; until: Date },
 ): Promise<void> {
-  await tx
-    .delete(lateReadings)
-    .where(and(eq(lateReadings.buildingId, buildingId), sql`${lateReadings.receivedAt} <= ${until}`))
+  await tx.execute(sql`
+    WITH gone AS (DELETE FROM late_readings WHERE building_id = ${buildingId} AND received_at <= ${until} RETURNING building_id, hour)
+    INSERT INTO rollup_hours (building_id, hour) SELECT building_id, hour FROM gone ON CONFLICT DO NOTHING`)
 }

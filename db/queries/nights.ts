@@ -70,6 +70,27 @@ export async function finishedRuns(
   }))
 }
 
+/** Dates of the nights of one method version that are done, and whether their newest run was provisional. */
+export function finishedNights(
+  tx: Tx,
+  { buildingId, methodVersion }: { buildingId: number; methodVersion: string },
+): Promise<{ localDate: string; provisional: boolean }[]> {
+  return tx
+    .selectDistinctOn([nightRuns.localDate], {
+      localDate: nightRuns.localDate,
+      provisional: nightRuns.provisional,
+    })
+    .from(nightRuns)
+    .where(
+      and(
+        eq(nightRuns.buildingId, buildingId),
+        eq(nightRuns.methodVersion, methodVersion),
+        eq(nightRuns.state, 'done'),
+      ),
+    )
+    .orderBy(nightRuns.localDate, desc(nightRuns.finishedAt), desc(nightRuns.id))
+}
+
 /** The last night that is analysed, or null where none is. */
 export async function lastFinishedNight(
   tx: Tx,

@@ -1,6 +1,6 @@
 import type { Database } from '@/db/client'
 import { listBuildings } from '@/db/queries/building-plan'
-import { finishedRuns, firstReadingAt } from '@/db/queries/nights'
+import { finishedNights, firstReadingAt } from '@/db/queries/nights'
 import { METHOD_VERSION } from '@/lib/air/decay/version'
 import { weekStartOf } from '@/lib/air/nights'
 import type { Clock } from '@/lib/server/clock'
@@ -26,10 +26,7 @@ async function nightsDue({ database, clock }: CatchUpOptions, building: Building
   const nowS = clock.now().getTime() / 1000
   return database.asSystem('catch up', async (tx) => {
     const firstAt = await firstReadingAt(tx, { buildingId })
-    const runs = await finishedRuns(tx, {
-      ...{ buildingId, methodVersion: METHOD_VERSION },
-      ...{ fromDate: '0001-01-01', toDate: localDate(nowS, timeZone) },
-    })
+    const runs = await finishedNights(tx, { buildingId, methodVersion: METHOD_VERSION })
     const firstDate = firstAt && localDate(firstAt.getTime() / 1000, timeZone)
     return dueNights({ timeZone, nowS, firstDate, runs })
   })

@@ -3,7 +3,7 @@ import { clearLateHours } from '@/db/changes/nights'
 import type { Database, Tx } from '@/db/client'
 import { listBuildings } from '@/db/queries/building-plan'
 import { hasDigestsToWrite } from '@/db/queries/digests'
-import { finishedRuns, firstReadingAt, lateHours } from '@/db/queries/nights'
+import { finishedNights, firstReadingAt, lateHours } from '@/db/queries/nights'
 import { METHOD_VERSION } from '@/lib/air/decay/version'
 import type { Clock } from '@/lib/server/clock'
 import { addDays, localDate } from '@/lib/time'
@@ -43,12 +43,7 @@ async function tickBuilding(tx: Tx, building: Building, now: Date): Promise<void
   const nowS = now.getTime() / 1000
   const firstAt = await firstReadingAt(tx, { buildingId })
   const firstDate = firstAt && localDate(firstAt.getTime() / 1000, timeZone)
-  const runs = await finishedRuns(tx, {
-    buildingId,
-    methodVersion: METHOD_VERSION,
-    fromDate: '0001-01-01',
-    toDate: localDate(nowS, timeZone),
-  })
+  const runs = await finishedNights(tx, { buildingId, methodVersion: METHOD_VERSION })
   await queueNights(tx, building, dueNights({ timeZone, nowS, firstDate, runs }), true)
   const marks = await lateHours(tx, { buildingId, until: now })
   const lateHoursS = marks.map((mark) => mark.hour.getTime() / 1000)

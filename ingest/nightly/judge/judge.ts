@@ -1,5 +1,6 @@
 import { storeFindings } from '@/db/changes/findings'
 import { lockBuildingNights } from '@/db/changes/nights'
+import { notifyLive } from '@/db/changes/notice'
 import { markSuspects } from '@/db/changes/suspects'
 import { type NewRoomWeek, storeRateChanges, storeRoomWeeks } from '@/db/changes/weeks'
 import type { Database, Tx } from '@/db/client'
@@ -133,6 +134,7 @@ export async function judgeWeeks(options: JudgeOptions): Promise<JudgeResult> {
     }
     const newest = judgeWeek(material, weekStartOf(lastNight))
     rowsChanged += await judgeNow(tx, material, newest, now)
+    if (rowsChanged > 0) await notifyLive(tx, 'night', [buildingId])
     return { weeks, rowsChanged }
   })
 }

@@ -1,4 +1,5 @@
 import { storeFindings } from '@/db/changes/findings'
+import { notifyLive } from '@/db/changes/notice'
 import type { Database } from '@/db/client'
 import { type BuildingPlan, requireBuildingPlan } from '@/db/queries/building-plan'
 import { lastHeard } from '@/db/queries/weeks'
@@ -55,6 +56,7 @@ export async function watchSensors(options: {
       }
     })
     const ids = { buildingId, methodVersion: METHOD_VERSION, now }
-    await storeFindings(tx, { ...ids, kinds: ['sensor silent'], findings })
+    const changed = await storeFindings(tx, { ...ids, kinds: ['sensor silent'], findings })
+    if (changed > 0) await notifyLive(tx, 'sensors', [buildingId])
   })
 }
