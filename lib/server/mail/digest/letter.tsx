@@ -117,6 +117,34 @@ function Found({ content }: { content: DigestContent }) {
   )
 }
 
+function GoodToKnow({ words }: { words: string | null }) {
+  if (!words) return null
+  return (
+    <>
+      <Heading as="h2" style={styles.heading}>
+        Good to know
+      </Heading>
+      <Text style={styles.text}>{words}</Text>
+    </>
+  )
+}
+
+function Foot({ content }: { content: DigestContent }) {
+  return (
+    <>
+      {content.cautions.map((sentence) => (
+        <Text key={sentence} style={styles.foot}>
+          {sentence}
+        </Text>
+      ))}
+      <Text style={styles.foot}>
+        You get this every Monday because {content.tenancy.name} named you for it. The building’s operator can
+        change that.
+      </Text>
+    </>
+  )
+}
+
 /** The digest as a letter. One picture at most a room that fell short; everything it says is also in words. */
 export function DigestLetter({ content, pageUrl }: { content: DigestContent; pageUrl: string }) {
   const short = shortRooms(content)
@@ -161,27 +189,12 @@ export function DigestLetter({ content, pageUrl }: { content: DigestContent; pag
           </Heading>
           <RoomTable rooms={content.rooms} />
           <Text style={styles.caution}>{content.occupancyCaution}</Text>
-          {content.goodToKnow ? (
-            <>
-              <Heading as="h2" style={styles.heading}>
-                Good to know
-              </Heading>
-              <Text style={styles.text}>{content.goodToKnow}</Text>
-            </>
-          ) : null}
+          <GoodToKnow words={content.goodToKnow} />
           <Button href={pageUrl} style={styles.button}>
             See the week, room by room
           </Button>
           <Hr style={styles.line} />
-          {content.cautions.map((sentence) => (
-            <Text key={sentence} style={styles.foot}>
-              {sentence}
-            </Text>
-          ))}
-          <Text style={styles.foot}>
-            You get this every Monday because {content.tenancy.name} named you for it. The building’s operator
-            can change that.
-          </Text>
+          <Foot content={content} />
         </Container>
       </Body>
     </Html>
