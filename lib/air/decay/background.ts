@@ -38,6 +38,8 @@ export type BackgroundInputs = {
   /** the instant that the background is wanted for */
   atS: number
   defaultOutdoor?: { ppm: number; standardUncertaintyPpm: number }
+  /** standard uncertainty of the room's sensor level, ppm */
+  sensorOffsetPpm?: number
 }
 
 type Estimate = { ppm: number; sd: number; origin: Background['origin'] }
@@ -97,7 +99,7 @@ export function estimateBackground(inputs: BackgroundInputs): Background {
   const nights = nightsEstimate(inputs, moved)
   if (nights) estimates.push(nights)
   const sensors = Math.hypot(
-    BACKGROUND.sensorOffsetPpm,
+    inputs.sensorOffsetPpm ?? BACKGROUND.sensorOffsetPpm,
     outdoorNow === null ? prior.standardUncertaintyPpm : 8,
   )
   const elsewhere: Estimate = {

@@ -1,9 +1,8 @@
 /** Gates: which readings of a decay may be given as a figure, with what doubt, or as a bound only. */
-import { DEFAULT_SENSOR, GATES, PLAUSIBLE_FLOOR_PPM } from '@/lib/air/constants'
+import { GATES, PLAUSIBLE_FLOOR_PPM } from '@/lib/air/constants'
 import type { Background, Check, EstimateKind, Quality, Reason } from '@/lib/air/types'
 import { median } from '@/lib/math/robust'
 import { type CleanRecord, type Interval, indexAt } from './clean'
-import { rateWords } from './explain'
 import type { Reading } from './run'
 
 export type Verdict = { kind: EstimateKind; quality: Quality; reasons: Reason[]; checks: Check[] }
@@ -150,19 +149,4 @@ export function judgeReading(
   const reasons = [...new Set([...refusals, ...doubts])]
   const quality: Quality = refusals.length > 0 ? 'refused' : doubts.length > 0 ? 'doubtful' : 'accepted'
   return { kind, quality, reasons, checks }
-}
-
-/** The rate of a reading in words, for notes. */
-export function readingWords(reading: Reading): string {
-  return `${rateWords(reading.estimate.ratePerHour)} per hour`
-}
-
-/** Standard uncertainty of one sensor's absolute level, ppm (a data sheet's figure is taken as 95 %). */
-export function sensorLevelUncertainty(
-  level: number,
-  sensor: { accuracyPpm?: number; accuracyPct?: number } = {},
-): number {
-  const flat = sensor.accuracyPpm ?? DEFAULT_SENSOR.accuracyPpm
-  const share = sensor.accuracyPct ?? DEFAULT_SENSOR.accuracyPct
-  return (flat + (share / 100) * level) / 1.96
 }

@@ -147,3 +147,25 @@ function joined(group: readonly RateDrop[], rooms: number): SupplyStop {
     to: reduced * 2 > group.length ? 'supply reduced' : 'supply off',
   }
 }
+
+export type EarlierStop = { date: string; clockS: number; to: SupplyStop['to'] }
+
+/** How near in the day earlier stops must lie to count as one habit, seconds. */
+const HABIT_S = 1200
+
+/**
+ * The hour at which an air handler was seen to stop on at least two of the last nights, as a stop of today: weaker than rooms that slow together
+ * today, so its interval is a quarter of an hour wide on both sides.
+ */
+export function habitualStop(earlier: readonly EarlierStop[], dayStartS: number): SupplyStop | null {
+  let best: readonly EarlierStop[] = []
+  for (const stop of earlier) {
+    const near = earlier.filter((other) => Math.abs(other.clockS - stop.clockS) <= HABIT_S)
+    if (near.length > best.length) best = near
+  }
+  if (new Set(best.map((stop) => stop.date)).size < 2) return null
+  const atS = dayStartS + best.reduce((sum, stop) => sum + stop.clockS, 0) / best.length
+  const off = best.filter((stop) => stop.to === 'supply off').length
+  const to = off * 2 >= best.length ? 'supply off' : 'supply reduced'
+  return { atS, lowS: atS - 900, highS: atS + 900, rooms: 0, to }
+}

@@ -1,6 +1,6 @@
 /** One room's record of a day opened for reading: cleaned, its falls found, its backgrounds known; and every fall read. */
-import { BACKGROUND } from '@/lib/air/constants'
-import type { Background, RoomSpec, Series } from '@/lib/air/types'
+import { BACKGROUND, DEFAULT_OUTDOOR } from '@/lib/air/constants'
+import type { Background, RoomSpec, SensorSpec, Series } from '@/lib/air/types'
 import { type BackgroundInputs, estimateBackground, type OutdoorLevel } from './background'
 import { sliceBins } from './bins'
 import { type CleanRecord, cleanRecord } from './clean'
@@ -12,6 +12,7 @@ import { type FallReading, fallBins, readFall, usefulEnd } from './read-fall'
 export type DayWindow = { date: string; dayStartS: number; dayEndS: number }
 
 export type RoomRecord = {
+  room: RoomSpec
   record: CleanRecord
   track: Track
   falls: Fall[]
@@ -61,7 +62,7 @@ export function openRecord(
   const own = restingLevels(track, falls, lowest, day.date, history)
   const nightsLow = Math.min(...history.map((entry) => entry.ppm))
   if (lowest?.reached && own.length === 0 && lowest.ppm < nightsLow + ABOVE_OTHER_NIGHTS_PPM) own.push(lowest)
-  return { record, track, falls, lowest, own, history, floorsAgree: agree(own, history) }
+  return { room, record, track, falls, lowest, own, history, floorsAgree: agree(own, history) }
 }
 
 /** Three or more resting levels on at least two nights, scattered by no more than outdoor air does. */
@@ -82,15 +83,38 @@ export type Surroundings = {
 
 /** The background of an opened record at an instant. */
 export function backgroundFor(opened: RoomRecord, atS: number, around: Surroundings): Background {
-  const { own, lowest, history } = opened
+  const { own, lowest, history, room } = opened
+  const seen = asSensorReads(around.defaultOutdoor ?? DEFAULT_OUTDOOR, room.altitudeM ?? 0)
+  const sensorOffsetPpm = declaredOffset(room.sensor, seen.ppm)
   return estimateBackground({
     own,
     lowest,
     history,
     atS,
     outdoor: around.outdoor,
-    defaultOutdoor: around.defaultOutdoor,
+    defaultOutdoor: seen,
+    sensorOffsetPpm,
   })
+}
+
+/** Standard uncertainty of a sensor's level from its data sheet (a half-width at 95 %); ordinary where nothing is declared. */
+function declaredOffset(sensor: SensorSpec | undefined, level: number): number {
+  if (sensor?.accuracyPpm === undefined && sensor?.accuracyPct === undefined)
+    return BACKGROUND.sensorOffsetPpm
+  return Math.max(8, ((sensor.accuracyPpm ?? 0) + ((sensor.accuracyPct ?? 0) / 100) * level) / 1.96)
+}
+
+/**
+ * What a sensor at an altitude reads of a known level when nobody says whether it corrects for pressure: anything between the level and the level
+ * times the pressure ratio of the standard atmosphere, p / p0 = (1 - 2.25577e-5 z)^5.25588 (z in m).
+ */
+export function asSensorReads(level: { ppm: number; standardUncertaintyPpm: number }, altitudeM: number) {
+  const ratio = (1 - 2.25577e-5 * Math.max(0, altitudeM)) ** 5.25588
+  const spread = (level.ppm * (1 - ratio)) / Math.sqrt(12)
+  return {
+    ppm: (level.ppm * (1 + ratio)) / 2,
+    standardUncertaintyPpm: Math.hypot(level.standardUncertaintyPpm, spread),
+  }
 }
 
 /** Reads every fall that reaches into the day. */
