@@ -17,7 +17,7 @@ export type PersonPanelProps = {
 /** Who is signed in, the building to work on, light or dark, and the ways out. */
 export function PersonPanel(props: PersonPanelProps) {
   return (
-    <div className="grid gap-4 border-t border-ink pt-3 text-2">
+    <div className="grid gap-4 text-2 max-md:border-t max-md:border-ink max-md:pt-3">
       <p>
         <b className="text-3">{props.name}</b>
         <br />

@@ -25,7 +25,9 @@ export function RateHistory({ weeks, changes, basisRatePerHour, timeZone, roomNa
   const atOf = (date: string) => localToEpochS(date, '12:00', timeZone)
   const spec = useMemo((): ChartSpec => {
     const at = (date: string) => localToEpochS(date, '12:00', timeZone)
-    const measured = weeks.filter(({ low, high, rate }) => low !== null || high !== null || rate !== null)
+    const measured = weeks.filter(
+      ({ mode, low, high, rate }) => mode !== 'unknown' && (low ?? high ?? rate) !== null,
+    )
     const newestOf = (isOccupied: boolean) =>
       measured.findLast(({ mode }) => occupied.has(mode) === isOccupied)
     const ends = [newestOf(true), newestOf(false)].flatMap((week) => {
@@ -58,7 +60,10 @@ export function RateHistory({ weeks, changes, basisRatePerHour, timeZone, roomNa
   const first = weeks[0]
   const last = weeks[weeks.length - 1]
   if (!first || !last) return <NoHistory />
-  const highest = Math.max(basisRatePerHour ?? 0, ...weeks.map(({ high, rate }) => high ?? rate ?? 0))
+  const highest = Math.max(
+    basisRatePerHour ?? 0,
+    ...weeks.filter(({ mode }) => mode !== 'unknown').map(({ high, rate }) => high ?? rate ?? 0),
+  )
   const year = last.weekStart.slice(0, 4)
   return (
     <section className="mt-12 max-sm:mt-9">

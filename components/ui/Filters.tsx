@@ -54,7 +54,7 @@ function FilterLink({ choice }: { choice: FilterChoice }) {
       scroll={false}
       aria-current={choice.current ? 'true' : undefined}
       className={cx(
-        'inline-block min-w-6 py-[3px] no-underline hover:text-ink max-sm:py-[11px]',
+        'inline-block min-w-6 flex-none py-[3px] no-underline hover:text-ink max-sm:py-[11px]',
         choice.current ? 'font-[650] text-ink shadow-[0_2px_0_var(--ink)]' : 'text-ink-2 hover:underline',
       )}
     >

@@ -153,8 +153,10 @@ export function whyWords(room: RoomTile, nowS: number, timeZone: string): string
     const last = `Last heard ${dayAndClock(live.atS, nowS, timeZone)} at ${spaced(live.co2Ppm ?? 0)} ppm.`
     return `${last} See to its power and its gateway.`
   }
-  if (live.state === 'sensor suspect')
-    return room.suspectReason ?? 'Its readings do not fit. Give it the fresh-air check, or swap it.'
+  if (live.state === 'sensor suspect') {
+    const reason = room.suspectReason ?? 'its readings do not fit'
+    return `${sentenceCase(reason).replace(/\.?$/, '.')} Give it the fresh-air check, or swap it.`
+  }
   return overWords(room)
 }
 

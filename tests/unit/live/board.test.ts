@@ -75,6 +75,10 @@ describe('what the board says', () => {
     expect(whyWords(room('3.01', { co2Ppm: 5200, unusual: true }), NOW, 'UTC')).toContain(
       'follow the site’s emergency procedure',
     )
+    const drifting = { ...rooms[3]!, suspectReason: 'drifts against its fellows: −67 ppm in 42 nights' }
+    expect(whyWords(drifting, NOW, 'UTC')).toBe(
+      'Drifts against its fellows: −67 ppm in 42 nights. Give it the fresh-air check, or swap it.',
+    )
     expect(whyWords(rooms[1]!, NOW, 'UTC')).toBe(
       'Rising 9 ppm a minute. Its ventilation supports 9 people, and it is meant for 12.',
     )
