@@ -163,15 +163,21 @@ export async function listBoardReadings(
 
 /**
  * The rooms of the board that this scope may see, by public id, and whether their live value is for it. This query runs in the
- * reader's own scope, so row-level security decides.
+ * reader's own scope, so row-level security decides; a tenant sees live what the tenancy holds now, not what it held once.
  */
 export async function listVisibleRooms(
   tx: Tx,
-  { buildingId, hidesSinglePerson }: { buildingId: number; hidesSinglePerson: boolean },
+  { buildingId, hidesSinglePerson, now }: { buildingId: number; hidesSinglePerson: boolean; now: Date },
 ): Promise<Map<string, { live: boolean }>> {
   const rows = await tx
     .select({ publicId: rooms.publicId, singlePerson: rooms.singlePerson })
     .from(rooms)
-    .where(and(eq(rooms.buildingId, buildingId), eq(rooms.kind, 'room')))
+    .where(
+      and(
+        eq(rooms.buildingId, buildingId),
+        eq(rooms.kind, 'room'),
+        sql`ebb_holds(${rooms.id}, ${now.toISOString()}::timestamptz)`,
+      ),
+    )
   return new Map(rows.map((row) => [row.publicId, { live: !(hidesSinglePerson && row.singlePerson) }]))
 }

@@ -1,6 +1,7 @@
 import { listVisibleRooms } from '@/db/queries/board'
 import { type Scope, wallScopeOf } from '@/lib/policy/scope'
 import type { Board, BoardChange, RoomTile } from '@/lib/wire/live-board'
+import { systemClock } from '../clock'
 import { database } from '../database'
 import { liveHub } from './hub'
 
@@ -10,7 +11,9 @@ export type Visible = ReadonlyMap<string, { live: boolean }>
 /** Asks, in the reader's own scope, which rooms of the building are theirs to see. */
 export function visibleFor(scope: Scope, buildingId: number): Promise<Visible> {
   const { hidesSinglePerson } = scope
-  return database().withScope(scope, (tx) => listVisibleRooms(tx, { buildingId, hidesSinglePerson }))
+  return database().withScope(scope, (tx) =>
+    listVisibleRooms(tx, { buildingId, hidesSinglePerson, now: systemClock.now() }),
+  )
 }
 
 /** What of these rooms the reader may see; a hidden live value goes out as nothing. */

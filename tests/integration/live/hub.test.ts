@@ -153,6 +153,23 @@ test('a tenant hears of the own rooms alone, and nothing live of a single-person
   expect(board?.rooms.map(({ number }) => number)).toEqual(['0.01', '0.02', '0.03'])
 })
 
+test('a tenancy that has ended sees nothing live of its former room', async () => {
+  const { scopeOf } = await import('@/lib/policy/scope')
+  const member = {
+    userId: 0,
+    organizationId: mill.organizationId,
+    roles: ['tenant'] as const,
+    buildingIds: null,
+  }
+  const [former, present] = await Promise.all(
+    [mill.tenancies.loom, mill.tenancies.weir].map(({ id }) =>
+      visibleModule.boardFor(scopeOf({ ...member, tenancyId: id }), mill.buildingId),
+    ),
+  )
+  expect(former?.rooms).toEqual([])
+  expect(present?.rooms.map(({ name }) => name)).toContain('Studio')
+})
+
 test('when PostgreSQL ends the listening connection, it comes back, tells every stream to reload, and goes on', async () => {
   const stream = await openStream(mill.people.operator)
   await expect.poll(() => rooms(stream.heard).length, { timeout: 10_000 }).toBeGreaterThan(0)
