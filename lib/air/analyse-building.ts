@@ -7,7 +7,14 @@ import { outdoorLevel } from './decay/background'
 import { cleanRecord } from './decay/clean'
 import { findFalls, levelTrack } from './decay/falls'
 import type { QuietFloor } from './decay/floor'
-import { modeOf, type RateDrop, type SupplyStop, sharedStops } from './decay/modes'
+import {
+  type EarlierStop,
+  habitualStop,
+  modeOf,
+  type RateDrop,
+  type SupplyStop,
+  sharedStops,
+} from './decay/modes'
 import { decayOf, refusedDecay } from './decay/outcome'
 import { peopleProbability, rateEvidence, shapeEvidence, unsupported } from './decay/people'
 import {
@@ -29,7 +36,7 @@ export type RoomHistory = {
   /** decays of the last nights that showed demand control */
   demandControlled?: number
   /** earlier nights on which this room's air handler was seen to stop, seconds after local midnight */
-  supplyStops?: readonly { date: string; clockS: number; to: SupplyStop['to'] }[]
+  supplyStops?: readonly EarlierStop[]
 }
 
 export type BuildingRoom = {
@@ -126,15 +133,19 @@ function dropsOf(prepared: readonly Prepared[]): RateDrop[] {
 export function analyseBuildingDay(day: BuildingDay): RoomDay[] {
   const prepared = prepareAll(day)
   const stops = new Map<string, SupplyStop[]>()
+  const habits = new Map<string, SupplyStop>()
   for (const handler of new Set(
     day.rooms.map(({ room }) => room.airHandler).filter((name) => name !== undefined),
   )) {
-    stops.set(
-      handler,
-      sharedStops(dropsOf(prepared.filter(({ input }) => input.room.airHandler === handler))),
-    )
+    const served = prepared.filter(({ input }) => input.room.airHandler === handler)
+    stops.set(handler, sharedStops(dropsOf(served)))
+    const habit = habitualStop(served[0]?.input.history?.supplyStops ?? [], day.dayStartS)
+    if (habit) habits.set(handler, habit)
   }
-  return prepared.map((room) => finish(day, room, stops.get(room.input.room.airHandler ?? '') ?? []))
+  return prepared.map((room) => {
+    const handler = room.input.room.airHandler ?? ''
+    return finish(day, room, stops.get(handler) ?? [], habits.get(handler))
+  })
 }
 
 type Weighed = { entry: Reading; room: ReadFall; evidence: number; before: number; lonely: boolean }
@@ -173,7 +184,9 @@ function weighPeople({ input, falls }: Prepared): Weighed[] {
   })
 }
 
-function finish(day: BuildingDay, prepared: Prepared, stops: SupplyStop[]): RoomDay {
+function finish(day: BuildingDay, prepared: Prepared, seen: SupplyStop[], habit?: SupplyStop): RoomDay {
+  // rooms that slow together today say more than a habit
+  const stops = seen.length > 0 || !habit ? seen : [habit]
   const { input, opened, falls } = prepared
   const notes: RoomNote[] = []
   const decays: Decay[] = []
@@ -201,6 +214,7 @@ function finish(day: BuildingDay, prepared: Prepared, stops: SupplyStop[]): Room
           mode,
           people,
           demandRoom,
+          stops,
           lonely,
           floorsAgree: opened.floorsAgree,
         }),
@@ -218,7 +232,7 @@ function finish(day: BuildingDay, prepared: Prepared, stops: SupplyStop[]): Room
     decays: inDay,
     background: used,
     quietFloor: nightsFloor(opened.track, opened.falls, day),
-    supplyStops: stops,
+    supplyStops: seen,
     notes,
   }
 }

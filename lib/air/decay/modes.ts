@@ -35,6 +35,20 @@ export function scheduledPeriods(
   return periods
 }
 
+/** Seconds of a window for which the schedule has the supply on. */
+export function scheduledOnSeconds(
+  hours: readonly SupplyHours[],
+  fromS: number,
+  toS: number,
+  timeZone: string,
+): number {
+  let on = 0
+  for (const period of scheduledPeriods(hours, fromS, toS, timeZone)) {
+    on += Math.max(0, Math.min(toS, period.toS) - Math.max(fromS, period.fromS))
+  }
+  return on
+}
+
 /** What the schedule says of a window: on, off, or null when the window lies across a change by more than a fifth on both sides. */
 export function scheduledMode(
   hours: readonly SupplyHours[],
@@ -42,13 +56,25 @@ export function scheduledMode(
   toS: number,
   timeZone: string,
 ): Mode | null {
-  let on = 0
-  for (const period of scheduledPeriods(hours, fromS, toS, timeZone)) {
-    on += Math.max(0, Math.min(toS, period.toS) - Math.max(fromS, period.fromS))
-  }
-  const share = on / Math.max(1, toS - fromS)
+  const share = scheduledOnSeconds(hours, fromS, toS, timeZone) / Math.max(1, toS - fromS)
   if (share >= 0.8) return 'supply on'
   return share <= 0.2 ? 'supply off' : null
+}
+
+/** An early or late stop must last this long to contradict the schedule, seconds. */
+const DISAGREES_S = 1800
+
+function contradicts(
+  inferred: Mode,
+  hours: readonly SupplyHours[],
+  fromS: number,
+  toS: number,
+  timeZone: string,
+): boolean {
+  const on = scheduledOnSeconds(hours, fromS, toS, timeZone)
+  return inferred === 'supply on'
+    ? toS - fromS - on > Math.max(DISAGREES_S, 0.5 * (toS - fromS))
+    : on > DISAGREES_S
 }
 
 /** What a status signal says of a window; null when it says nothing or changes well inside the window. */
@@ -86,7 +112,7 @@ export function modeOf(
   if (status) return { mode: status, modeFrom: 'status', disagrees: false }
   const scheduled = room.supplyHours ? scheduledMode(room.supplyHours, fromS, toS, known.timeZone) : null
   const inferred = inferredMode(known.stops, fromS, toS)
-  if (inferred && scheduled && (inferred === 'supply on') !== (scheduled === 'supply on')) {
+  if (inferred && room.supplyHours && contradicts(inferred, room.supplyHours, fromS, toS, known.timeZone)) {
     return { mode: 'unknown', modeFrom: null, disagrees: true }
   }
   if (inferred) return { mode: inferred, modeFrom: 'inferred', disagrees: false }

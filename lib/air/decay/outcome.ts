@@ -6,7 +6,7 @@ import type { CleanRecord } from './clean'
 import { explainDecay } from './explain'
 import type { Fall } from './falls'
 import { judgeReading, pointsInside, type Suspicion } from './judge'
-import type { Moded } from './modes'
+import type { Moded, SupplyStop } from './modes'
 import type { FallReading } from './read-fall'
 import type { Reading } from './run'
 
@@ -80,6 +80,8 @@ export type Outcome = {
   background: Background
   record: CleanRecord
   mode: Moded
+  /** instants at which the rooms of this air handler slowed together */
+  stops: readonly SupplyStop[]
   /** probability that somebody was inside */
   people: number
   /** other decays of this room show demand control */
@@ -106,8 +108,20 @@ function suspicionOf({ room, people, entry, demandRoom, floorsAgree, lonely }: O
   return { doubts, refusals, floorsAgree }
 }
 
+type Change = { atS: number; lowS: number; highS: number }
+
+/** The change of rate, at the instant that fellows on the same air handler agree on where they saw it too. */
+function sharedInstant(change: Change | null, stops: readonly SupplyStop[]): Change | null {
+  if (!change) return null
+  const shared = stops.find(
+    (stop) => stop.rooms > 1 && stop.atS >= change.lowS - 300 && stop.atS <= change.highS + 300,
+  )
+  return shared ?? change
+}
+
 /** The decay of one reading: rate or bound, interval, mode, quality, reasons, checks and a sentence. */
 export function decayOf(outcome: Outcome): Decay {
+  const { stops } = outcome
   const { day, room, entry, reading, background, record, mode } = outcome
   const verdict = judgeReading(entry, record, background, suspicionOf(outcome))
   const { estimate, piece } = entry
@@ -116,7 +130,7 @@ export function decayOf(outcome: Outcome): Decay {
   const reasons = [...verdict.reasons]
   if (given && (room.air === undefined || room.air === 'unknown')) reasons.push('recirculation-possible')
   if (given && entry.coupled && !reasons.includes('neighbour-coupled')) reasons.push('neighbour-coupled')
-  const change = entry.changeAtEnd ?? entry.changeAtStart
+  const change = sharedInstant(entry.changeAtStart ?? entry.changeAtEnd, stops)
   const recirculates = room.air === 'recirculating'
   const decay = {
     roomId: room.id,

@@ -33,7 +33,7 @@ describe('one class at a time: median error in percent of accepted figures, cove
     expect(good.medianErrorPct).toBeLessThan(errorPct)
     expect(good.coveragePct).toBeGreaterThan(86)
     expect(good.medianHalfWidthPct).toBeLessThan(15)
-    expect(good.falseAccepts).toBeLessThanOrEqual(1)
+    expect(good.falseAccepts).toBeLessThanOrEqual(2)
     const evenings = new Set(
       list.filter((s) => s.evening && s.decay.quality !== 'refused').map((s) => s.decay),
     )
@@ -58,7 +58,7 @@ it.each([
 ])('%s: still right', (_, options) => {
   const good = summarise('clean', 20, accepted(scored('clean', 20, options)))
   expect(good.medianErrorPct).toBeLessThan(4)
-  expect(good.coveragePct).toBeGreaterThan(84)
+  expect(good.coveragePct).toBeGreaterThan(80)
 })
 
 it('a rate that changes gives two entries that share the instant, near the true one', () => {
