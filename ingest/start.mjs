@@ -18,6 +18,9 @@ const dev = process.argv.includes('--dev')
 const demo = !process.argv.includes('--no-demo')
 const host = process.env.HOST || '127.0.0.1'
 const mqttHost = process.env.MQTT_HOST || '127.0.0.1'
+/** A broker of the house instead of our own: then ingest workers share its messages. */
+const outsideBroker = process.env.MQTT_URL || null
+const workerCount = workersAsked()
 
 /** @type {{ url: string | null, stopping: boolean, children: Child[], store: import('./stack/store.mjs').Store | null }} */
 const state = { url: null, stopping: false, children: [], store: null }
@@ -67,13 +70,24 @@ async function main() {
   greet(env)
 }
 
+/** How many ingest workers stand beside an outside broker. @returns {number} */
+function workersAsked() {
+  const count = Number(process.env.INGEST_WORKERS || 1)
+  if (Number.isInteger(count) && count >= 1 && count <= 64) return count
+  return fail(
+    new Error(`INGEST_WORKERS is ${process.env.INGEST_WORKERS}: expected a whole number from 1 to 64.`),
+  )
+}
+
 async function choosePorts() {
   const taken = new Set()
   const choose = (/** @type {string} */ name, /** @type {number} */ fallback, /** @type {string} */ on) =>
     choosePort({ name, asked: process.env[name], fallback, host: on, taken, say })
   return {
     PORT: await choose('PORT', 3000, host),
-    MQTT_PORT: await choose('MQTT_PORT', 1883, mqttHost),
+    MQTT_PORT: outsideBroker
+      ? Number(process.env.MQTT_PORT || 1883)
+      : await choose('MQTT_PORT', 1883, mqttHost),
     SMTP_PORT: process.env.SMTP_HOST
       ? Number(process.env.SMTP_PORT || 25)
       : await choose('SMTP_PORT', 1025, '127.0.0.1'),
@@ -178,7 +192,7 @@ async function startChildren(env) {
     : [next, 'start', '-p', env.PORT ?? '', '-H', host]
   /** @type {import('./stack/children.mjs').Spec[]} */
   const specs = [
-    { name: 'broker', args: ['ingest/broker/main.ts'], typescript: true, reportsReady: true },
+    ...ingestSpecs(),
     { name: 'jobs', args: ['ingest/nightly/main.ts'], typescript: true, reportsReady: true },
     { name: 'web', args: web },
   ]
@@ -186,17 +200,38 @@ async function startChildren(env) {
     specs.unshift({ name: 'mailbox', args: ['ingest/mailbox/main.ts'], typescript: true, reportsReady: true })
   const context = { root, env, say, output: logTo(path.join(dataDir, 'log')) }
   state.children = specs.map((spec) => new Child(spec, context))
-  await step('broker, jobs, mailbox and web started', async () => {
+  const ingest = outsideBroker ? `ingest workers (${workerCount})` : 'broker'
+  await step(`${ingest}, jobs, mailbox and web started`, async () => {
     await Promise.all(state.children.map((child) => child.start()))
     await answersHttp(`http://${host === '0.0.0.0' ? '127.0.0.1' : host}:${env.PORT}/sign-in`)
   })
   if (!demo) return
+  if (outsideBroker) {
+    say('the demo’s sensors do not publish: the broker of MQTT_URL does not know them')
+    return
+  }
   const sensors = new Child(
     { name: 'demo', args: ['ingest/simulator/live.ts'], typescript: true, reportsReady: true },
     context,
   )
   state.children.push(sensors)
   void sensors.start()
+}
+
+/** Our own broker with the ingest inside, or workers on the shared subscription of an outside one. @returns {import('./stack/children.mjs').Spec[]} */
+function ingestSpecs() {
+  const common = { typescript: true, reportsReady: true }
+  if (!outsideBroker) return [{ name: 'broker', args: ['ingest/broker/main.ts'], ...common }]
+  return workerNames().map((name, index) => ({
+    name,
+    args: ['ingest/worker/main.ts'],
+    env: { INGEST_WORKER: String(index + 1) },
+    ...common,
+  }))
+}
+
+function workerNames() {
+  return Array.from({ length: workerCount }, (_, index) => `worker-${index + 1}`)
 }
 
 /** One log file a process; the newest lines of a broken one are where the message says. @param {string} dir */
@@ -233,18 +268,21 @@ function greet(env) {
     say(`demo sign-ins, all with the password ${password}`)
     for (const person of people) say(`  ${person.email}  ${person.roles.join(', ')}`)
     say(`local mailbox: ${env.PUBLIC_URL}/mailbox (SMTP on 127.0.0.1:${env.SMTP_PORT})`)
-    say(`sensors publish to mqtt://${env.MQTT_HOST}:${env.MQTT_PORT}`)
+    if (!outsideBroker) say(`sensors publish to mqtt://${env.MQTT_HOST}:${env.MQTT_PORT}`)
   }
   process.stdout.write(`Ebbmark is ready at ${env.PUBLIC_URL}\n`)
 }
 
-/** Ends everything in order: sensors, web, jobs, broker, mailbox, PostgreSQL. @param {() => void} release @param {string} signal */
+/** Ends everything in order: sensors, web, jobs, broker or workers, mailbox, PostgreSQL. @param {() => void} release @param {string} signal */
 async function stop(release, signal) {
   if (state.stopping) return
   state.stopping = true
   say(`${signal}: stopping`)
-  const order = ['demo', 'web', 'jobs', 'broker', 'mailbox']
-  for (const name of order) await state.children.find((child) => child.spec.name === name)?.stop()
+  const order = [['demo'], ['web'], ['jobs'], ['broker', ...workerNames()], ['mailbox']]
+  for (const names of order) {
+    const children = state.children.filter((child) => names.includes(child.spec.name))
+    await Promise.all(children.map((child) => child.stop()))
+  }
   await state.store?.cluster?.stop()
   release()
   say('stopped')

@@ -40,7 +40,7 @@ try {
 }
 
 async function main() {
-  const [, binaries, chromium] = await Promise.all([
+  const [, binaries, chromium, mosquitto] = await Promise.all([
     step('npm packages ready', () => ensurePackages(root)),
     // one after the other: apt-get works alone
     step(
@@ -50,7 +50,12 @@ async function main() {
     Promise.resolve(null),
   ]).then(
     async ([packages, found]) =>
-      /** @type {const} */ ([packages, found, await step('Chromium ready', ensureChromium)]),
+      /** @type {const} */ ([
+        packages,
+        found,
+        await step('Chromium ready', ensureChromium),
+        await step('Mosquitto ready', ensureMosquitto),
+      ]),
   )
   const data = path.join(scratch, 'postgres')
   const port = await choosePort({
@@ -74,6 +79,7 @@ async function main() {
     TEST_OWNER_URL: `postgres://postgres@127.0.0.1:${port}`,
     TEST_WEB_DIST: webDist,
     TEST_CHROMIUM: chromium,
+    TEST_MOSQUITTO: mosquitto,
     NODE_ENV: 'test',
     LOG_LEVEL: 'warn',
     NEXT_TELEMETRY_DISABLED: '1',
@@ -115,6 +121,20 @@ async function ensureChromium() {
     )
   await installDebian(['chromium'])
   return '/usr/bin/chromium'
+}
+
+/** Debian's Mosquitto, an outside broker for the tests; installed when missing, its service neither started nor enabled. @returns {Promise<string>} */
+async function ensureMosquitto() {
+  const known =
+    process.env.TEST_MOSQUITTO ||
+    ['/usr/sbin/mosquitto', '/usr/local/sbin/mosquitto'].find((file) => fs.existsSync(file))
+  if (known) return known
+  if (process.getuid?.() !== 0)
+    throw new Error(
+      'The tests of outside brokers need Mosquitto: install it (as root: apt-get install mosquitto) or set TEST_MOSQUITTO to its program.',
+    )
+  await installDebian(['mosquitto'], { services: ['mosquitto.service'] })
+  return '/usr/sbin/mosquitto'
 }
 
 /** @param {string} name @param {string[]} args @param {NodeJS.ProcessEnv} env */

@@ -91,10 +91,12 @@ export async function installPostgres({ dataDir, say }) {
 }
 
 /**
- * apt-get install as root, without a service or a default cluster of PostgreSQL being started.
+ * apt-get install as root, without a service or a default cluster of PostgreSQL being started. `services` that come with the packages
+ * stay off after the next start of the machine too.
  * @param {string[]} names
+ * @param {{ services?: string[] }} [options]
  */
-export async function installDebian(names) {
+export async function installDebian(names, { services = [] } = {}) {
   const policy = '/etc/postgresql-common/createcluster.conf'
   if (names.includes('postgresql') && !fs.existsSync(policy)) {
     fs.mkdirSync(path.dirname(policy), { recursive: true })
@@ -113,12 +115,27 @@ export async function installDebian(names) {
     'install',
     ...names,
   ]
+  const giveBack = services.length > 0 ? forbidServices() : () => undefined
   try {
     await run('apt-get', install, { env })
   } catch {
     await run('apt-get', ['update'], { env }) // an empty or old package list is the usual cause
     await run('apt-get', install, { env })
+  } finally {
+    giveBack()
   }
+  for (const service of services) {
+    const asPackage = { ...env, DPKG_MAINTSCRIPT_PACKAGE: service.replace(/\.service$/, '') }
+    await run('deb-systemd-helper', ['disable', service], { env: asPackage })
+  }
+}
+
+/** While this stands, Debian's packages start no service (invoke-rc.d asks it); one that is there already is left alone. */
+function forbidServices() {
+  const policy = '/usr/sbin/policy-rc.d'
+  if (fs.existsSync(policy)) return () => undefined
+  fs.writeFileSync(policy, '#!/bin/sh\nexit 101\n', { mode: 0o755 })
+  return () => fs.rmSync(policy, { force: true })
 }
 
 /** @param {string} dataDir */

@@ -7,13 +7,13 @@ import {
   type PublishPacket,
 } from 'aedes'
 import type { Logger } from 'pino'
+import type { Credentials } from '../worker/credentials'
 import type { Ingest } from '../worker/ingest'
-import type { Credentials } from './credentials'
+import { sourceOf, takePublish } from '../worker/take'
 import { guardConnection, writtenTopic } from './guard'
 import { LIMITS } from './limits'
 import { Session } from './session'
 import { SignIn } from './sign-in'
-import { sourceOf, takePublish } from './take'
 import { Throttle } from './throttle'
 
 export type BrokerOptions = {

@@ -11,11 +11,6 @@ export const LIMITS = {
   connections: 20_000,
   /** connects waiting to be accepted */
   backlog: 4096,
-  /** how long known credentials are trusted without asking the database */
-  credentialLifeMs: 30_000,
-  /** how long a name is remembered as unknown */
-  unknownLifeMs: 5_000,
-  credentialsMax: 200_000,
   /** the connected devices are checked against the database this often, should a notice have been lost */
   recheckMs: 60_000,
   /** failed connects of one address and user name in a minute before it is refused unread */

@@ -5,10 +5,10 @@ import { openDatabase } from '@/db/client'
 import { listenLive } from '@/db/listen'
 import { env } from '@/lib/server/env'
 import { log } from '@/lib/server/log'
+import { Credentials } from '../worker/credentials'
 import { Ingest } from '../worker/ingest'
 import { within } from '../worker/pause'
 import { Broker } from './broker'
-import { Credentials } from './credentials'
 import { LIMITS } from './limits'
 
 /** A database that hangs is given up on after this; the batch's own deadline is shorter. */

@@ -2,12 +2,12 @@ import type { AuthenticateError, Client } from 'aedes'
 import { isDeviceSecret } from '@/db/device-secret'
 import type { Device } from '@/db/queries/devices'
 import type { RefusalReason } from '@/lib/wire/mqtt'
+import type { Credentials } from '../worker/credentials'
 import type { Ingest } from '../worker/ingest'
 import { pause, within } from '../worker/pause'
-import type { Credentials } from './credentials'
+import { sourceOf } from '../worker/take'
 import { FailedConnects } from './failed-connects'
 import { LIMITS } from './limits'
-import { sourceOf } from './take'
 
 /** CONNACK return codes of MQTT 3.1.1 §3.2.2.3. */
 const returnCodes = { otherClientId: 2, unavailable: 3, badSecret: 4, notAuthorized: 5 } as const

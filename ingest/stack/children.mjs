@@ -8,6 +8,7 @@ const leash = new URL('./leash.mjs', import.meta.url).href
  * @typedef {object} Spec
  * @property {string} name
  * @property {string[]} args what node runs
+ * @property {Record<string, string>} [env] beside what all see
  * @property {boolean} [typescript] load tsx first
  * @property {boolean} [reportsReady] sends { ready: true } over its channel
  * @property {number} [stopWithinMs]
@@ -36,7 +37,7 @@ export class Child {
     const before = ['--import', leash, ...(spec.typescript ? ['--import', 'tsx'] : [])]
     const child = spawn(process.execPath, [...before, ...spec.args], {
       cwd: context.root,
-      env: context.env,
+      env: { ...context.env, ...spec.env },
       stdio: ['ignore', 'pipe', 'pipe', 'ipc'],
       detached: true, // its own group: Ctrl-C reaches it only through the order of stop()
     })

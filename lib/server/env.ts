@@ -7,6 +7,9 @@ const flag = z
   .default('0')
   .transform((value) => value === '1')
 
+/** Days that something is kept; empty keeps everything. */
+const keptDays = z.coerce.number().int().min(30).optional()
+
 const schema = z.object({
   NODE_ENV: z.enum(['development', 'production', 'test']).default('development'),
   EBBMARK_DATA_DIR: z
@@ -20,6 +23,17 @@ const schema = z.object({
   PORT: port(3000),
   MQTT_HOST: z.string().default('127.0.0.1'),
   MQTT_PORT: port(1883),
+  MQTT_URL: z
+    .string()
+    .regex(/^mqtts?:\/\/./, 'expected mqtt://host:port or mqtts://host:port')
+    .optional(),
+  MQTT_CA_FILE: z.string().optional(),
+  MQTT_CLIENT_ID: z
+    .string()
+    .regex(/^[A-Za-z0-9._:-]{1,40}$/, 'expected 1 to 40 of letters, digits, . _ : -')
+    .default('ebbmark'),
+  INGEST_WORKERS: z.coerce.number().int().min(1).max(64).default(1),
+  INGEST_WORKER: z.coerce.number().int().min(1).max(64).default(1),
   MQTT_SENSOR_READINGS_PER_S: z.coerce.number().positive().default(100),
   SMTP_HOST: z.string().default('127.0.0.1'),
   SMTP_PORT: port(1025),
@@ -29,6 +43,12 @@ const schema = z.object({
   PUBLIC_URL: z.string().url().optional(),
   NEXTAUTH_SECRET: z.string().min(32).optional(),
   EBBMARK_DEMO: flag,
+  EBBMARK_READINGS_KEPT_DAYS: keptDays,
+  EBBMARK_ROLLUPS_KEPT_DAYS: keptDays,
+  EBBMARK_ARCHIVE: z.enum(['csv', 'none']).default('csv'),
+  EBBMARK_METRICS_TOKEN: z.string().min(20).optional(),
+  EBBMARK_DISK_TIGHT_PCT: z.coerce.number().min(0).max(90).default(15),
+  EBBMARK_DISK_FULL_PCT: z.coerce.number().min(0).max(90).default(5),
   LOG_LEVEL: z.enum(['trace', 'debug', 'info', 'warn', 'error', 'fatal', 'silent']).default('info'),
 })
 
@@ -88,6 +108,10 @@ export function offersDemoSignIn(): boolean {
 
 /** Where sensors publish to, as an installer types it in. */
 export function brokerAddress(): { host: string; port: number } {
-  const { MQTT_HOST, MQTT_PORT } = env()
+  const { MQTT_HOST, MQTT_PORT, MQTT_URL } = env()
+  if (MQTT_URL) {
+    const { protocol, hostname, port: given } = new URL(MQTT_URL)
+    return { host: hostname, port: Number(given || (protocol === 'mqtts:' ? 8883 : 1883)) }
+  }
   return { host: MQTT_HOST === '0.0.0.0' ? new URL(publicUrl()).hostname : MQTT_HOST, port: MQTT_PORT }
 }

@@ -1,7 +1,7 @@
 /** One reading as a device sends it, checked. */
 import { z } from 'zod'
 import { shown, type WireRefusal } from './mqtt-refusals'
-import { readTime } from './mqtt-time'
+import { readTime, timeNotKnown } from './mqtt-time'
 
 /** A reading taken: epoch milliseconds, ppm, °C, %, %, dBm. `marked`: stored although outside 350 to 5000 ppm. */
 export type WireReading = {
@@ -40,14 +40,15 @@ export function isRecord(value: unknown): value is Record<string, unknown> {
 
 /**
  * Takes one item. A bad time or CO2 value refuses it; a bad value beside CO2 is refused alone and the reading is kept without it.
- * Unknown fields are passed by. `where` names the item in the refusal, e.g. "item 3: ".
+ * Unknown fields are passed by. `where` names the item in the refusal, e.g. "item 3: ". `held`: a broker may have kept the message, so
+ * the time of arrival cannot stand for a missing one.
  */
-export function takeItem(item: unknown, receivedMs: number, where: string, out: Parsed): void {
+export function takeItem(item: unknown, receivedMs: number, where: string, out: Parsed, held = false): void {
   if (!isRecord(item)) {
     out.refusals.push({ reason: 'bad-payload', detail: `${where}expected an object with co2_ppm` })
     return
   }
-  const atMs = readTime(item.t, receivedMs)
+  const atMs = held && (item.t ?? null) === null ? timeNotKnown : readTime(item.t, receivedMs)
   if (typeof atMs !== 'number') {
     out.refusals.push({ reason: atMs.reason, detail: where + atMs.detail })
     return

@@ -44,6 +44,12 @@ export function arrivalMs(receivedMs: number): number {
   return Math.floor(receivedMs / 1000) * 1000
 }
 
+/** Refusal of a reading without a time whose arrival says nothing of it. */
+export const timeNotKnown: WireRefusal = {
+  reason: 'bad-time',
+  detail: 't is missing, and the broker kept the message for a while: when it was measured is not known',
+}
+
 /**
  * Epoch milliseconds of `t`: ISO 8601 with offset, epoch seconds, or epoch milliseconds (from 1e11 on); absent or null is the time of
  * arrival to the second. Refused as bad-time, time-in-future (over 10 min ahead of arrival) or time-too-old (over 400 days).

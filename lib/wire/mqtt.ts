@@ -2,7 +2,7 @@
 import { z } from 'zod'
 import { isRecord, type Parsed, takeItem } from './mqtt-items'
 import type { WireRefusal } from './mqtt-refusals'
-import { readTime } from './mqtt-time'
+import { readTime, timeNotKnown } from './mqtt-time'
 import { isSenml, SENML_RECORDS_MAX, takeSenml } from './senml'
 
 export type { Parsed, WireReading } from './mqtt-items'
@@ -34,26 +34,28 @@ function readJson(payload: Uint8Array): { value: unknown } | WireRefusal {
 
 /**
  * Reads the payload of a readings topic: one object, a list of up to 500, or a SenML pack; item by item, so that a bad one does not
- * cost the others. `receivedMs` is the time of arrival in epoch milliseconds. Never throws.
+ * cost the others. `receivedMs` is the time of arrival in epoch milliseconds; where the message was `held` by a broker it stands for no
+ * missing time. Never throws.
  */
-export function parseReadings(payload: Uint8Array, receivedMs: number): Parsed {
+export function parseReadings(payload: Uint8Array, receivedMs: number, held = false): Parsed {
   const out: Parsed = { readings: [], refusals: [] }
   const json = readJson(payload)
   if ('reason' in json) out.refusals.push(json)
-  else if (Array.isArray(json.value)) takeList(json.value, receivedMs, out)
-  else if (isRecord(json.value)) takeItem(json.value, receivedMs, '', out)
+  else if (Array.isArray(json.value)) takeList(json.value, receivedMs, out, held)
+  else if (isRecord(json.value)) takeItem(json.value, receivedMs, '', out, held)
   else out.refusals.push({ reason: 'bad-payload', detail: 'expected an object or a list of objects' })
   return out
 }
 
-function takeList(items: readonly unknown[], receivedMs: number, out: Parsed): void {
+function takeList(items: readonly unknown[], receivedMs: number, out: Parsed, held: boolean): void {
   const senml = isSenml(items)
   const most = senml ? SENML_RECORDS_MAX : ITEMS_MAX
   if (items.length === 0) out.refusals.push({ reason: 'bad-payload', detail: 'an empty list' })
   else if (items.length > most)
     out.refusals.push({ reason: 'too-many-items', detail: `${items.length} items: expected at most ${most}` })
-  else if (senml) takeSenml(items, receivedMs, out)
-  else for (const [index, item] of items.entries()) takeItem(item, receivedMs, `item ${index + 1}: `, out)
+  else if (senml) takeSenml(items, receivedMs, out, held)
+  else
+    for (const [index, item] of items.entries()) takeItem(item, receivedMs, `item ${index + 1}: `, out, held)
 }
 
 const statusSchema = z.enum(['online', 'offline'])
@@ -89,11 +91,16 @@ export type WireSupplyState = {
 }
 
 /** Reads the payload of a supply topic: one state. Never throws. */
-export function parseSupply(payload: Uint8Array, receivedMs: number): WireSupplyState | WireRefusal {
+export function parseSupply(
+  payload: Uint8Array,
+  receivedMs: number,
+  held = false,
+): WireSupplyState | WireRefusal {
   const json = readJson(payload)
   if ('reason' in json) return json
   if (!isRecord(json.value)) return { reason: 'bad-payload', detail: 'expected an object with state' }
-  const atMs = readTime(json.value.t, receivedMs)
+  const isTimeless = (json.value.t ?? null) === null
+  const atMs = held && isTimeless ? timeNotKnown : readTime(json.value.t, receivedMs)
   if (typeof atMs !== 'number') return atMs
   const parsed = supplySchema.safeParse(json.value)
   if (!parsed.success) {

@@ -1,7 +1,7 @@
 /** Sensor Measurement Lists, JSON form (RFC 8428), as far as a CO2 sensor needs them. */
 import { isRecord, type Parsed, takeItem } from './mqtt-items'
 import type { WireRefusal } from './mqtt-refusals'
-import { arrivalMs } from './mqtt-time'
+import { arrivalMs, timeNotKnown } from './mqtt-time'
 
 /** Records of one pack at most: 500 readings of five quantities. */
 export const SENML_RECORDS_MAX = 2500
@@ -46,11 +46,11 @@ const labelTypes = new Map<string, 'string' | 'number'>([
 type Base = { name: string; timeS: number; unit: string | undefined; value: number }
 
 /** Resolves a pack (base name, time, unit, value) and takes one reading per resolved time. */
-export function takeSenml(records: readonly unknown[], receivedMs: number, out: Parsed): void {
+export function takeSenml(records: readonly unknown[], receivedMs: number, out: Parsed, held = false): void {
   const base: Base = { name: '', timeS: 0, unit: undefined, value: 0 }
   const byTime = new Map<number, Record<string, unknown>>()
   for (const [index, record] of records.entries()) {
-    const refusal = takeRecord(record, base, receivedMs, byTime)
+    const refusal = takeRecord(record, base, { receivedMs, held }, byTime)
     if (refusal)
       out.refusals.push({ reason: refusal.reason, detail: `record ${index + 1}: ${refusal.detail}` })
   }
@@ -62,7 +62,7 @@ export function takeSenml(records: readonly unknown[], receivedMs: number, out: 
 function takeRecord(
   record: unknown,
   base: Base,
-  receivedMs: number,
+  arrival: { receivedMs: number; held: boolean },
   byTime: Map<number, Record<string, unknown>>,
 ): WireRefusal | undefined {
   if (!isRecord(record)) return { reason: 'bad-payload', detail: 'expected an object' }
@@ -83,7 +83,9 @@ function takeRecord(
       reason: 'wrong-unit',
       detail: `unit "${String(unit).slice(0, 20)}" of ${quantity.field}: expected ${Object.keys(quantity.units).join(' or ')}`,
     }
-  const atMs = timeOf(base.timeS + (typeof record.t === 'number' ? record.t : 0), receivedMs)
+  const timeS = base.timeS + (typeof record.t === 'number' ? record.t : 0)
+  if (arrival.held && timeS < leastAbsoluteS) return timeNotKnown
+  const atMs = timeOf(timeS, arrival.receivedMs)
   if (Math.abs(atMs) > 8.64e15) return { reason: 'bad-time', detail: 'bt + t is no time' }
   const item = byTime.get(atMs) ?? { t: atMs / 1000 }
   item[quantity.field] = convert(base.value + (typeof record.v === 'number' ? record.v : 0))

@@ -6,11 +6,11 @@ import type { Device } from '@/db/queries/devices'
 import { FailedConnects } from '@/ingest/broker/failed-connects'
 import { LIMITS } from '@/ingest/broker/limits'
 import { Session } from '@/ingest/broker/session'
-import { takePublish } from '@/ingest/broker/take'
 import { Throttle } from '@/ingest/broker/throttle'
 import { faultOf } from '@/ingest/worker/faults'
 import { retryDelayMs, within } from '@/ingest/worker/pause'
 import { RefusalBook } from '@/ingest/worker/refusal-book'
+import { takePublish } from '@/ingest/worker/take'
 
 const nowMs = Date.UTC(2026, 2, 2, 7, 31)
 

@@ -8,7 +8,7 @@ import {
   type WireRefusal,
 } from '@/lib/wire/mqtt'
 import { parseTopic, type TopicLeaf, topicOf } from '@/lib/wire/topics'
-import type { Message, Source } from '../worker/messages'
+import type { Message, Source } from './messages'
 
 /** What a publish brings, before anyone waits for it. `retain`: a status that the broker keeps. */
 export type Taken = Omit<Message, 'settle'> & { retain: boolean }
@@ -34,8 +34,17 @@ function ownLeaf(device: Device, topic: string): TopicLeaf | undefined {
   return isOwn && ownLeaves[device.kind].includes(parsed.leaf) ? parsed.leaf : undefined
 }
 
-/** Reads one publish of a device at its arrival (epoch milliseconds): rows to store and refusals to record. Never throws. */
-export function takePublish(device: Device, topic: string, payload: Uint8Array, receivedMs: number): Taken {
+/**
+ * Reads one publish of a device at its arrival (epoch milliseconds): rows to store and refusals to record. `held`: a broker may have kept
+ * it, so that its arrival stands for no missing time. Never throws.
+ */
+export function takePublish(
+  device: Device,
+  topic: string,
+  payload: Uint8Array,
+  receivedMs: number,
+  held = false,
+): Taken {
   const from = sourceOf(device)
   const taken: Taken = { from, readings: [], supply: [], refusals: [], retain: false }
   let sample: string | undefined
@@ -46,7 +55,7 @@ export function takePublish(device: Device, topic: string, payload: Uint8Array, 
   const leaf = ownLeaf(device, topic)
   if (leaf === undefined) refuse(wrongTopic(device, topic))
   else if (leaf === 'readings') {
-    const parsed = parseReadings(payload, receivedMs)
+    const parsed = parseReadings(payload, receivedMs, held)
     const { id: sensorId, buildingId } = device
     taken.readings = parsed.readings.map((reading) => ({ ...reading, sensorId, buildingId, receivedMs }))
     parsed.refusals.forEach(refuse)
@@ -55,7 +64,7 @@ export function takePublish(device: Device, topic: string, payload: Uint8Array, 
     if ('reason' in parsed) refuse(parsed)
     else taken.retain = true
   } else {
-    const parsed = parseSupply(payload, receivedMs)
+    const parsed = parseSupply(payload, receivedMs, held)
     const { id: airHandlerId, organizationId, buildingId } = device
     if ('reason' in parsed) refuse(parsed)
     else taken.supply = [{ ...parsed, airHandlerId, organizationId, buildingId, receivedMs }]

@@ -1,13 +1,18 @@
 import type { Database } from '@/db/client'
 import { type Device, findGatewayDevices, findSensorDevices } from '@/db/queries/devices'
 import { parseUserName } from '@/lib/wire/topics'
-import { LIMITS } from './limits'
 
 type Held = { device: Device | undefined; untilMs: number }
 type Waiting = { resolve: (device: Device | undefined) => void; reject: (error: Error) => void }
 
 /** Names asked for in one query. */
 const BATCH_NAMES = 2000
+/** How long known devices are trusted without asking the database. */
+const KNOWN_LIFE_MS = 30_000
+/** How long a name is remembered as unknown. */
+const UNKNOWN_LIFE_MS = 5_000
+/** Names remembered at most. */
+const NAMES_MAX = 200_000
 
 /**
  * Devices by user name, without case, remembered for a short time. Names asked for while a query runs share the next one, so a thousand
@@ -23,6 +28,12 @@ export class Credentials {
   constructor(database: Database, nowMs: () => number) {
     this.#database = database
     this.#nowMs = nowMs
+  }
+
+  /** The device of this user name where it is remembered as known, without asking. */
+  remembered(userName: string): Device | undefined {
+    const held = this.#held.get(userName.toLowerCase())
+    return held && held.untilMs > this.#nowMs() ? held.device : undefined
   }
 
   /** The device of this user name, or undefined where none is registered. Rejects when the database does not answer. */
@@ -78,8 +89,8 @@ export class Credentials {
   }
 
   #hold(key: string, device: Device | undefined): void {
-    if (this.#held.size >= LIMITS.credentialsMax) this.#held.clear()
-    const lifeMs = device ? LIMITS.credentialLifeMs : LIMITS.unknownLifeMs
+    if (this.#held.size >= NAMES_MAX) this.#held.clear()
+    const lifeMs = device ? KNOWN_LIFE_MS : UNKNOWN_LIFE_MS
     this.#held.set(key, { device, untilMs: this.#nowMs() + lifeMs })
   }
 }

@@ -1,0 +1,15 @@
+/** What the ingest workers of one deployment have in common at an outside broker. */
+
+/** One subscription that all workers share: the broker gives each message to one of them (MQTT 5 §4.8.2). */
+export const SHARED_FILTER = '$share/ebbmark/ebbmark/v1/+/+/+'
+
+/** Publishes that the broker sends ahead of their acknowledgements: two batches, so that one travels while one is committed. */
+export const RECEIVE_MAXIMUM = 10_000
+
+/** How long the broker keeps a worker's queue while the worker is away. */
+export const SESSION_EXPIRY_S = 7 * 86_400
+
+/** The client id of worker `number` (from 1): the same after every start, so that it comes back to its own queue. */
+export function workerClientId(prefix: string, number: number): string {
+  return `${prefix}-worker-${number}`
+}
