@@ -2,7 +2,6 @@
  * One building, one local day: every decay that starts on it, in every room, with what rooms know of each other. The nightly job, the command
  * `analyse` and the tests all call this; it reads no clock, no file and no database.
  */
-import { GATES, PEOPLE } from './constants'
 import { outdoorLevel } from './decay/background'
 import { cleanRecord } from './decay/clean'
 import { findFalls, levelTrack } from './decay/falls'
@@ -16,7 +15,7 @@ import {
   sharedStops,
 } from './decay/modes'
 import { decayOf, refusedDecay } from './decay/outcome'
-import { peopleProbability, rateEvidence, shapeEvidence, unsupported } from './decay/people'
+import { peopleProbability } from './decay/people'
 import {
   type DayWindow,
   nightsFloor,
@@ -25,7 +24,7 @@ import {
   type RoomRecord,
   readFalls,
 } from './decay/room-record'
-import type { Reading } from './decay/run'
+import { weighPeople } from './decay/weigh'
 import type { Background, Decay, RoomSpec, Series, SupplyChange } from './types'
 
 /** What earlier nights left behind for a room. */
@@ -148,42 +147,6 @@ export function analyseBuildingDay(day: BuildingDay): RoomDay[] {
   })
 }
 
-type Weighed = { entry: Reading; room: ReadFall; evidence: number; before: number; lonely: boolean }
-
-/** Weighs for every reading whether the room was empty; rates that are sure help to judge the others. */
-function weighPeople({ input, falls }: Prepared): Weighed[] {
-  const recent = input.history?.recentRates ?? []
-  const weighed: Weighed[] = falls.flatMap((room, k) => {
-    const next = falls[k + 1]
-    const quiet = !next || next.fall.fromS - room.fall.toS > PEOPLE.quietS
-    const before = quiet ? PEOPLE.beforeQuiet : PEOPLE.beforeDay
-    return (room.reading?.readings ?? []).map((entry) => {
-      const evidence = shapeEvidence(entry, room.reading!.prior, input.room.volumeM3, recent)
-      return {
-        entry,
-        room,
-        evidence,
-        before: entry.piece.slowFirst ? PEOPLE.beforeSlow : before,
-        lonely: false,
-      }
-    })
-  })
-  const sure = weighed.filter(
-    ({ evidence, before }) => peopleProbability(evidence, before) < PEOPLE.doubtful / 2,
-  )
-  return weighed.map((own) => {
-    const others = sure
-      .filter((other) => other.entry !== own.entry)
-      .map((other) => other.entry.piece.ratePerHour)
-    const known = [...others, ...recent]
-    const lonely = own.entry.piece.startExcessPpm < GATES.lonelyExcessPpm && unsupported(own.entry, known)
-    // people who leave one by one look like a slow decay too: its shape alone never makes it sure
-    if (own.entry.piece.slowFirst)
-      return { ...own, evidence: Math.min(own.evidence, PEOPLE.mostSlowEvidence), lonely }
-    return { ...own, evidence: own.evidence + rateEvidence(own.entry, known), lonely }
-  })
-}
-
 function finish(day: BuildingDay, prepared: Prepared, seen: SupplyStop[], habit?: SupplyStop): RoomDay {
   // rooms that slow together today say more than a habit
   const stops = seen.length > 0 || !habit ? seen : [habit]
@@ -191,7 +154,7 @@ function finish(day: BuildingDay, prepared: Prepared, seen: SupplyStop[], habit?
   const notes: RoomNote[] = []
   const decays: Decay[] = []
   let used: Background | null = null
-  const weighed = weighPeople(prepared)
+  const weighed = weighPeople(falls, input.room.volumeM3, input.history?.recentRates ?? [])
   const demandToday = weighed.filter(({ entry }) => entry.demand).length
   const demandRoom = demandToday + (input.history?.demandControlled ?? 0) >= 2
   for (const { reading, background, fall, record } of falls) {

@@ -1,9 +1,9 @@
 /** One run of an empty room fitted: its ends trimmed, every piece its own rate, one background. */
 import { sliceBins } from './bins'
 import type { CoupledFit } from './coupled'
-import { type DemandFit, fitDemand } from './demand'
+import type { DemandFit } from './demand'
+import { demandIn, occupiedEnd } from './demand-run'
 import { type RateEstimate, rateEstimate, residualSd, reweighed } from './interval'
-import { longRunScale } from './noise'
 import type { Piece } from './pieces'
 import {
   type Binned,
@@ -13,18 +13,7 @@ import {
   piecewiseExcess,
   startFrom,
 } from './piecewise'
-import { hingeScores } from './segments'
-
-/** Left out after the last person left (practice: ten minutes at most; the rest is found from the readings). */
-const SETTLING_S = 180
-/** How sure a slow beginning must be to be cut, standard deviations. */
-const TRIM_SIGMAS = 2.4
-/** At most so many time constants are cut at the start. */
-const TRIM_CONSTANTS = 0.8
-/** How much worse than steps demand control may fit and still be taken, in chi squared: the smooth law is the likelier one. */
-const DEMAND_MARGIN = 2
-/** Gain in chi squared that demand control must bring over one rate. */
-const GRADUAL_GAIN = 7
+import { fitRun, type Run, settlingH, trimEnds } from './trim'
 
 /** One rate over one stretch of an empty room. */
 export type Reading = {
@@ -73,73 +62,6 @@ function changeInterval(data: Binned, fit: PiecewiseFit, prior: Prior, index: nu
   }
 }
 
-export type Run = {
-  data: Binned
-  pieces: readonly Piece[]
-  prior: Prior
-  originS: number
-  stepS: number
-  openEnd: boolean
-}
-
-function fitRun(run: Run, part: Binned, breaksH: readonly number[]): PiecewiseFit | null {
-  const { pieces, prior } = run
-  const start = {
-    logStartExcess: Math.log(Math.max(1, pieces[0]!.startExcessPpm)),
-    ratesPerHour: pieces.map((piece) => piece.ratePerHour),
-    backgroundPpm: prior.ppm,
-  }
-  return fitPiecewise(part, part.timeH[0]!, breaksH, prior, start)
-}
-
-/**
- * Cuts a window's ends where the rate there differs from the rest of the window by less than a break would need: people go one by one, so that
- * a slow beginning is likely and cheap to leave out; and somebody who comes back slows the end.
- */
-function trimEnds(run: Run, part: Binned, breaksH: readonly number[]): Binned {
-  const { pieces, prior } = run
-  let kept = part
-  for (let round = 0; round < 4; round++) {
-    const fit = fitRun(run, kept, breaksH)
-    if (!fit) return kept
-    const variance = Math.max(0.5, longRunScale(fit, kept).variance)
-    const scores = hingeScores(kept, fit, prior)
-    const first = breaksH[0] ?? part.timeH[part.timeH.length - 1]!
-    const mostH = Math.min(
-      0.5 * (first - part.timeH[0]!),
-      TRIM_CONSTANTS / Math.max(0.05, pieces[0]!.ratePerHour),
-    )
-    const limitH = part.timeH[0]! + mostH
-    let at = -1
-    for (let i = 1; i < scores.length && kept.timeH[i]! <= limitH; i++)
-      if (at < 0 || scores[i]! > scores[at]!) at = i
-    const lateAt = run.openEnd && breaksH.length === 0 ? lowestScore(scores, kept) : -1
-    const slowStart = at > 0 && scores[at]! > TRIM_SIGMAS * Math.sqrt(variance)
-    const slowEnd = lateAt > 0 && scores[lateAt]! < -1.5 * TRIM_SIGMAS * Math.sqrt(variance)
-    if (!slowStart && !slowEnd) return kept
-    const next = slowStart
-      ? sliceBins(kept, kept.timeH[at]!, Number.POSITIVE_INFINITY)
-      : sliceBins(kept, 0, kept.timeH[lateAt]!)
-    if (next.timeH.length < 6) return kept
-    kept = next
-  }
-  return kept
-}
-
-/** The bin in the last third at which slowing down is most likely. */
-function lowestScore(scores: Float64Array, data: Binned): number {
-  let at = -1
-  for (let i = Math.floor(0.6 * data.timeH.length); i < scores.length - 1; i++)
-    if (at < 0 || scores[i]! < scores[at]!) at = i
-  return at
-}
-
-/** Seconds to leave out at the start for the sensor's lag and for mixing, short of a sixth of a time constant. */
-function settlingH(run: Run): number {
-  const rate = Math.max(0.1, run.pieces[0]!.ratePerHour)
-  return Math.min(SETTLING_S / 3600, 0.16 / rate)
-}
-
 /** Fits one empty run jointly: every piece its own rate, one background. */
 export function readRun(run: Run): Reading[] {
   const { data, pieces, prior, originS, stepS } = run
@@ -151,11 +73,7 @@ export function readRun(run: Run): Reading[] {
   const fit = fitRun(run, part, breaksH)
   if (!fit) return []
   const weighed = reweighed(part, fit, prior)
-  const demand = slowsDown(weighed.fit)
-    ? demandOf(part, prior, fit)
-    : bendsDown(weighed.fit, part, prior)
-      ? gradualDemand(part, prior, fit)
-      : null
+  const demand = demandIn(part, prior, fit, weighed.fit)
   if (demand) return [demandReading(run, part, weighed, demand)]
   const scaled = { ...part, sdPpm: part.sdPpm.map((sd) => sd * weighed.factor) }
   const changes = breaksH.map((_, k) => changeInterval(scaled, weighed.fit, prior, k, originS))
@@ -173,46 +91,6 @@ export function readRun(run: Run): Reading[] {
     changeAtStart: changes[k - 1] ?? null,
     changeAtEnd: changes[k] ?? null,
   }))
-}
-
-const slowsDown = (fit: PiecewiseFit) =>
-  fit.ratesPerHour.length > 1 &&
-  fit.ratesPerHour.every((rate, k) => k === 0 || rate < fit.ratesPerHour[k - 1]!)
-
-/** Demand control, when it explains the readings about as well as steps do; a step that is really sharp is a step. */
-function demandOf(part: Binned, prior: Prior, steps: PiecewiseFit): DemandFit | null {
-  const demand = fitDemand(part, prior, steps)
-  if (!demand || demand.startRatePerHour < 1.25 * demand.endRatePerHour) return null
-  const spare = 2 * (steps.breaksH.length * 2 - 1)
-  const variance = longRunScale(steps, part).variance
-  return demand.chiSquared < steps.chiSquared + (spare + DEMAND_MARGIN) * variance ? demand : null
-}
-
-/** Until when the rate is still near that of the occupied end: it has fallen to six tenths, at least ten minutes on. */
-function occupiedEnd(demand: DemandFit, fromH: number, toH: number): number {
-  for (let t = 0.02; fromH + t < toH; t += 0.02) {
-    if (demand.rateAfter(t) < 0.6 * demand.startRatePerHour) return fromH + Math.max(t, 1 / 6)
-  }
-  return toH
-}
-
-/** One rate fits, yet the readings would rather have it fall: worth asking whether it follows CO2. */
-function bendsDown(fit: PiecewiseFit, part: Binned, prior: Prior): boolean {
-  if (
-    fit.ratesPerHour.length > 1 ||
-    fit.ratesPerHour[0]! * (part.timeH[part.timeH.length - 1]! - part.timeH[0]!) < 1
-  )
-    return false
-  return hingeScores(part, fit, prior).some((score) => score < -2)
-}
-
-/** Demand control that a single rate hides: clearly better, and the rate falls by a third or more. */
-function gradualDemand(part: Binned, prior: Prior, one: PiecewiseFit): DemandFit | null {
-  const demand = fitDemand(part, prior, one)
-  if (!demand || demand.startRatePerHour < 1.5 * demand.endRatePerHour) return null
-  return demand.chiSquared < one.chiSquared - GRADUAL_GAIN * Math.max(1, longRunScale(one, part).variance)
-    ? demand
-    : null
 }
 
 function demandReading(

@@ -1,0 +1,44 @@
+/** All decays of a room's day weighed together: was the room empty, and does any other decay speak for a lonely one? */
+import { GATES, PEOPLE } from '@/lib/air/constants'
+import { peopleProbability, rateEvidence, shapeEvidence, unsupported } from './people'
+import type { ReadFall } from './room-record'
+import type { Reading } from './run'
+
+export type Weighed = { entry: Reading; room: ReadFall; evidence: number; before: number; lonely: boolean }
+
+/** Weighs for every reading whether the room was empty; rates that are sure help to judge the others. */
+export function weighPeople(
+  falls: readonly ReadFall[],
+  volumeM3: number,
+  recent: readonly number[],
+): Weighed[] {
+  const weighed: Weighed[] = falls.flatMap((room, k) => {
+    const next = falls[k + 1]
+    const quiet = !next || next.fall.fromS - room.fall.toS > PEOPLE.quietS
+    const before = quiet ? PEOPLE.beforeQuiet : PEOPLE.beforeDay
+    return (room.reading?.readings ?? []).map((entry) => {
+      const evidence = shapeEvidence(entry, room.reading!.prior, volumeM3, recent)
+      return {
+        entry,
+        room,
+        evidence,
+        before: entry.piece.slowFirst ? PEOPLE.beforeSlow : before,
+        lonely: false,
+      }
+    })
+  })
+  const sure = weighed.filter(
+    ({ evidence, before }) => peopleProbability(evidence, before) < PEOPLE.doubtful / 2,
+  )
+  return weighed.map((own) => {
+    const others = sure
+      .filter((other) => other.entry !== own.entry)
+      .map((other) => other.entry.piece.ratePerHour)
+    const known = [...others, ...recent]
+    const lonely = own.entry.piece.startExcessPpm < GATES.lonelyExcessPpm && unsupported(own.entry, known)
+    // people who leave one by one look like a slow decay too: its shape alone never makes it sure
+    if (own.entry.piece.slowFirst)
+      return { ...own, evidence: Math.min(own.evidence, PEOPLE.mostSlowEvidence), lonely }
+    return { ...own, evidence: own.evidence + rateEvidence(own.entry, known), lonely }
+  })
+}
