@@ -48,7 +48,6 @@ export function WindowHandles({
   plot: uPlot
   window: ChartWindow
   timeZone: string
-  drawn: number
 }) {
   return (['from', 'to'] as const).map((edge) => (
     <Handle key={edge} edge={edge} plot={plot} window={window} timeZone={timeZone} />

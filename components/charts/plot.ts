@@ -3,6 +3,7 @@ import { logTicks, timeTicks, valueTicks } from '@/lib/format/time-ticks'
 import { drawAbove, drawBelow } from './draw'
 import { LANE_PX } from './draw/marks'
 import { readPalette } from './draw/palette'
+import { plotData } from './plot-data'
 import type { ChartSpec, ChartWindow, ValueAxis } from './types'
 
 /** What the plot reads anew at every draw, so that data, theme and window may change without making it again. */
@@ -69,7 +70,7 @@ export function makePlot(
       ],
     },
   }
-  return new uPlot(options, dataOf(live()), root)
+  return new uPlot(options, plotData(spec, live().view), root)
 }
 
 function zoomToSelection(u: uPlot, live: () => Live): void {
@@ -77,13 +78,6 @@ function zoomToSelection(u: uPlot, live: () => Live): void {
   if (width < 4) return
   live().onZoom(u.posToVal(left, 'x'), u.posToVal(left + width, 'x'))
   u.setSelect({ left: 0, top: 0, width: 0, height: 0 }, false)
-}
-
-/** uPlot needs a table of its own; it carries the first course, or the ends of the view where there is none. */
-export function dataOf({ spec, view }: Live): uPlot.AlignedData {
-  const first = spec.lines?.[0]
-  if (!first || first.timeS.length === 0) return [[...view], [null, null]]
-  return [[...first.timeS], [...first.values]]
 }
 
 function timeAxis(live: () => Live, narrow: boolean): uPlot.Axis {

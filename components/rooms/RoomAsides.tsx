@@ -1,22 +1,33 @@
+'use client'
+
 import Link from 'next/link'
+import { useBoard } from '@/components/live/use-board'
 import { MarginSection } from '@/components/ui/Page'
 import { dayAndClock, longDate } from '@/lib/format/clock'
 import { spaced } from '@/lib/format/counts'
 import { paths } from '@/lib/paths'
+import type { Board } from '@/lib/wire/live-board'
 import type { RoomFinding, RoomSensor } from '@/lib/wire/rooms'
 
-/** Sensors of the room with reading and standing. */
+/** Sensors of the room with reading and standing; the lead one shows the room's live number. */
 export function RoomSensors({
+  board: initial,
+  roomId,
   sensors,
   nowS,
   timeZone,
   linked,
 }: {
+  board: Board
+  roomId: string
   sensors: readonly RoomSensor[]
   nowS: number
   timeZone: string
   linked: boolean
 }) {
+  const { board } = useBoard(initial)
+  const live = board.rooms.find(({ id }) => id === roomId)?.live
+  const ppmOf = (sensor: RoomSensor) => (sensor.lead && live ? live.co2Ppm : sensor.co2Ppm)
   return (
     <MarginSection title={sensors.length === 1 ? 'Sensor' : 'Sensors'} className="max-lg:mt-9">
       {sensors.length === 0 && <p className="text-2 text-ink-2">No sensor is placed here yet.</p>}
@@ -45,10 +56,7 @@ export function RoomSensors({
               )}
             </span>
             <span className="flex-none text-right">
-              <span className="fig text-[14px]">
-                {sensor.co2Ppm === null ? '–' : `${spaced(sensor.co2Ppm)}`}
-              </span>
-              {sensor.co2Ppm !== null && <span className="text-1 text-ink-3"> ppm</span>}
+              <Ppm value={ppmOf(sensor)} />
               <span className="block text-2 text-ink-2">{sensor.standing}</span>
               {sensor.lastAtS !== null && sensor.standing !== 'sound' && (
                 <span className="block text-1 text-ink-3">{dayAndClock(sensor.lastAtS, nowS, timeZone)}</span>
@@ -58,6 +66,16 @@ export function RoomSensors({
         ))}
       </ul>
     </MarginSection>
+  )
+}
+
+function Ppm({ value }: { value: number | null }) {
+  if (value === null) return <span className="fig text-[14px]">–</span>
+  return (
+    <>
+      <span className="fig text-[14px]">{spaced(value)}</span>
+      <span className="text-1 text-ink-3"> ppm</span>
+    </>
   )
 }
 

@@ -1,23 +1,13 @@
-import { and, asc, desc, eq, gt, gte, inArray, isNull, lt, or, sql } from 'drizzle-orm'
+import { and, asc, desc, eq, gte, inArray, isNull, or, sql } from 'drizzle-orm'
 import { silentAfterS } from '@/lib/air/room-state'
 import type { Mode } from '@/lib/air/types'
-import type {
-  Room,
-  RoomChange,
-  RoomDecay,
-  RoomFinding,
-  RoomSensor,
-  RoomVerdictRow,
-  RoomWeek,
-} from '@/lib/wire/rooms'
+import type { Room, RoomChange, RoomFinding, RoomSensor, RoomVerdictRow, RoomWeek } from '@/lib/wire/rooms'
 import type { Tx } from '../client'
 import {
   airHandlers,
   buildings,
-  decays,
   findings,
   floors,
-  hours,
   placements,
   rateChanges,
   roomDesigns,
@@ -232,68 +222,4 @@ function standingOf(
   if (atS === null) return 'awaiting first reading'
   if (nowS - atS > silentAfterS(sensor.intervalS)) return 'silent'
   return sensor.suspectSince ? 'suspect' : 'sound'
-}
-
-/** Decays of the room's lead sensor in force that touch the span, oldest first. */
-export function listRoomDecays(
-  tx: Tx,
-  { roomId, fromS, toS }: { roomId: number; fromS: number; toS: number },
-): Promise<RoomDecay[]> {
-  return tx
-    .select({
-      id: decays.publicId,
-      startS: sql<number>`extract(epoch from ${decays.startAt})::double precision`,
-      endS: sql<number>`extract(epoch from ${decays.endAt})::double precision`,
-      rate: decays.airChangeRatePerHour,
-      rateLow: decays.airChangeRateLowPerHour,
-      rateHigh: decays.airChangeRateHighPerHour,
-      mode: decays.mode,
-      quality: decays.quality,
-      sentence: decays.sentence,
-    })
-    .from(decays)
-    .where(
-      and(
-        eq(decays.roomId, roomId),
-        eq(decays.lead, true),
-        isNull(decays.supersededAt),
-        gt(decays.endAt, new Date(fromS * 1000)),
-        lt(decays.startAt, new Date(toS * 1000)),
-      ),
-    )
-    .orderBy(asc(decays.startAt))
-}
-
-export type SupplyRecord = {
-  states: { atS: number; state: 'on' | 'reduced' | 'off' }[]
-  hours: { days: number[]; from: string; to: string }[]
-}
-
-/** Status of the room's air handler from the state before `fromS` on, and its weekly hours for when it reports none. */
-export async function readSupply(
-  tx: Tx,
-  { airHandlerId, fromS, toS }: { airHandlerId: number; fromS: number; toS: number },
-): Promise<SupplyRecord> {
-  const { rows } = await tx.execute<{ atS: number; state: 'on' | 'reduced' | 'off' }>(sql`
-    SELECT extract(epoch from at)::double precision AS "atS", state FROM supply_states
-    WHERE air_handler_id = ${airHandlerId} AND at < to_timestamp(${toS}) AND at >= coalesce(
-      (SELECT max(at) FROM supply_states WHERE air_handler_id = ${airHandlerId} AND at <= to_timestamp(${fromS})), to_timestamp(${fromS}))
-    ORDER BY at`)
-  const weekly = await tx
-    .select({ days: hours.days, from: hours.fromLocal, to: hours.toLocal })
-    .from(hours)
-    .where(and(eq(hours.airHandlerId, airHandlerId), eq(hours.purpose, 'supply')))
-  return { states: rows, hours: weekly }
-}
-
-export type RoomListRow = { id: string; number: string; name: string; floorId: number }
-
-/** Every room of a building that the scope sees, in walking order. */
-export function listRooms(tx: Tx, { buildingId }: { buildingId: number }): Promise<RoomListRow[]> {
-  return tx
-    .select({ id: rooms.publicId, number: rooms.number, name: rooms.name, floorId: rooms.floorId })
-    .from(rooms)
-    .innerJoin(floors, eq(floors.id, rooms.floorId))
-    .where(and(eq(rooms.buildingId, buildingId), eq(rooms.kind, 'room')))
-    .orderBy(desc(floors.ordinal), asc(rooms.number))
 }

@@ -1,6 +1,7 @@
 import { listClosures } from '@/db/queries/closures'
 import { readRoomSeries } from '@/db/queries/readings'
-import { listRoomDecays, type RoomIdentity, readSupply } from '@/db/queries/rooms'
+import { listRoomDecays, readSupply } from '@/db/queries/room-record'
+import type { RoomIdentity } from '@/db/queries/rooms'
 import { supplySpans } from '@/lib/format/supply-spans'
 import type { SignedContext } from '../http/signed'
 

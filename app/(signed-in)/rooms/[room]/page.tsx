@@ -1,11 +1,7 @@
 import type { Metadata } from 'next'
 import { notFound } from 'next/navigation'
 import { Suspense } from 'react'
-import { RateHistory } from '@/components/rooms/RateHistory'
-import { RoomCautions, RoomFindings, RoomSensors } from '@/components/rooms/RoomAsides'
-import { RoomHead } from '@/components/rooms/RoomHead'
-import { RoomTakes } from '@/components/rooms/RoomTakes'
-import { RoomVerdict } from '@/components/rooms/RoomVerdict'
+import { RoomView } from '@/components/rooms/RoomView'
 import { Crumbs, Page } from '@/components/ui/Page'
 import { rangeOf } from '@/lib/format/room-range'
 import { paths } from '@/lib/paths'
@@ -33,15 +29,14 @@ export default async function RoomPage({ params, searchParams }: Address) {
   const found = await loadRoom((await params).room)
   if (!found) notFound()
   const board = await boardFor(page.scope, found.buildingId)
-  const tile = board?.rooms.find(({ id }) => id === found.room.id)
-  if (!board || !tile) notFound()
+  if (!board?.rooms.some(({ id }) => id === found.room.id)) notFound()
   const now = systemClock.now()
   const detail = await roomDetail(page, found, now)
   const { roles } = page.membership
-  const rates = can(roles, 'air-change.read') || can(roles, 'rounds.read')
-  const { verdict } = detail
-  const basisRate = verdict?.basisFlowLps ? (verdict.basisFlowLps * 3.6) / verdict.volumeM3 : null
   const walks = can(roles, 'rounds.read')
+  const rates = walks || can(roles, 'air-change.read')
+  const range = rangeOf((await searchParams).range)
+  const nowS = now.getTime() / 1000
   return (
     <Page>
       <Crumbs
@@ -52,51 +47,19 @@ export default async function RoomPage({ params, searchParams }: Address) {
         ]}
         end={neighboursOf(board, found.room.id)}
       />
-      <div className="grid grid-cols-[minmax(0,1fr)_304px] gap-x-16 max-lg:flex max-lg:flex-col">
-        <div className="min-w-0 max-lg:contents">
-          <RoomHead board={board} room={found.room}>
-            <RoomVerdict
-              detail={detail}
-              rates={rates}
-              decaysHref={can(roles, 'decay.read') ? paths.decaysOf(found.room.id) : null}
-            />
-          </RoomHead>
-          {!tile.hidden && (
-            <Suspense fallback={<CoursesWaiting />}>
-              <Courses
-                ctx={page}
-                found={found}
-                board={board}
-                range={rangeOf((await searchParams).range)}
-                rates={rates}
-                nowS={now.getTime() / 1000}
-              />
-            </Suspense>
-          )}
-          {rates && (
-            <RateHistory
-              weeks={detail.weeks}
-              changes={detail.changes}
-              basisRatePerHour={basisRate}
-              timeZone={found.timeZone}
-              roomName={found.room.name}
-            />
-          )}
-        </div>
-        <aside className="pt-[18px] max-lg:contents">
-          <RoomTakes detail={detail} tile={tile} rates={rates} />
-          {!tile.hidden && (
-            <RoomSensors
-              sensors={detail.sensors}
-              nowS={now.getTime() / 1000}
-              timeZone={found.timeZone}
-              linked={can(roles, 'sensor.read')}
-            />
-          )}
-          <RoomFindings findings={detail.findings} year={now.toISOString().slice(0, 4)} />
-        </aside>
-      </div>
-      <RoomCautions />
+      <RoomView
+        board={board}
+        detail={detail}
+        timeZone={found.timeZone}
+        nowS={nowS}
+        rates={rates}
+        decaysHref={can(roles, 'decay.read') ? paths.decaysOf(found.room.id) : null}
+        linksSensors={can(roles, 'sensor.read')}
+      >
+        <Suspense key={range.key} fallback={<CoursesWaiting />}>
+          <Courses ctx={page} found={found} board={board} range={range} rates={rates} nowS={nowS} />
+        </Suspense>
+      </RoomView>
     </Page>
   )
 }
