@@ -5,7 +5,7 @@ import type { Binned, PiecewiseFit, Prior } from './piecewise'
 import { hingeScores } from './segments'
 
 /** How much worse than steps demand control may fit and still be taken, in chi squared: the smooth law is the likelier one. */
-const DEMAND_MARGIN = 2
+const DEMAND_MARGIN = 5
 /** Gain in chi squared that demand control must bring over one rate. */
 const GRADUAL_GAIN = 7
 
