@@ -17,7 +17,7 @@ type Props = {
 export function ChartControls({ zoomable, view, all, show, cursor, timeZone }: Props) {
   const isAll = view[0] === all[0] && view[1] === all[1]
   return (
-    <div className="flex min-h-[19px] flex-wrap items-baseline gap-4 text-2 text-ink-3">
+    <div className="mt-[6px] flex min-h-[19px] flex-wrap items-baseline gap-4 text-2 text-ink-3">
       {zoomable && (
         <span className="no-print flex gap-[14px]">
           <ZoomWord words="Closer" onClick={() => show(...zoomed(view, 0.5, all))} />
