@@ -5,7 +5,13 @@ import { Page } from '@/components/ui/Page'
 import { ErrorState } from '@/components/ui/States'
 
 /** A page that could not be drawn; what was measured is not touched by that. */
-export default function PageError({ error, reset }: { error: Error & { digest?: string }; reset: () => void }) {
+export default function PageError({
+  error,
+  reset,
+}: {
+  error: Error & { digest?: string }
+  reset: () => void
+}) {
   return (
     <Page className="pt-12">
       <ErrorState

@@ -3,7 +3,13 @@
 import './globals.css'
 
 /** When even the frame round the pages fails. */
-export default function GlobalError({ error, reset }: { error: Error & { digest?: string }; reset: () => void }) {
+export default function GlobalError({
+  error,
+  reset,
+}: {
+  error: Error & { digest?: string }
+  reset: () => void
+}) {
   return (
     <html lang="en">
       <body>
@@ -11,15 +17,19 @@ export default function GlobalError({ error, reset }: { error: Error & { digest?
           <title>Ebbmark</title>
           <h1>Ebbmark could not be drawn</h1>
           <p className="mt-3 max-w-measure">
-            The web server met an error before the page began. Readings go on being stored; nothing was changed. Try again in a
-            moment.
+            The web server met an error before the page began. Readings go on being stored; nothing was
+            changed. Try again in a moment.
           </p>
           {error.digest && (
             <p className="mt-2 text-2 text-ink-3">
               If it stays, quote <span className="fig">{error.digest}</span> to your administrator.
             </p>
           )}
-          <button type="button" onClick={reset} className="mt-4 h-control rounded-2 border border-edge px-4 font-[600]">
+          <button
+            type="button"
+            onClick={reset}
+            className="mt-4 h-control rounded-2 border border-edge px-4 font-[600]"
+          >
             Try again
           </button>
         </main>

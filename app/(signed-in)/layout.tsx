@@ -27,7 +27,11 @@ export default async function SignedInLayout({ children }: { children: React.Rea
         name={page.person.name}
         email={page.person.email}
         roleWords={roles.map((role) => ROLE_WORDS[role]).join(', ')}
-        buildings={page.buildings.map(({ name, slug }) => ({ name, slug, current: slug === page.building?.slug }))}
+        buildings={page.buildings.map(({ name, slug }) => ({
+          name,
+          slug,
+          current: slug === page.building?.slug,
+        }))}
         mailboxHref={env().EBBMARK_DEMO && can(roles, 'mailbox.read') ? paths.mailbox() : null}
         chooseBuilding={chooseBuilding}
         signOutHere={signOutHere}
