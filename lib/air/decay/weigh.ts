@@ -27,6 +27,7 @@ export function weighPeople(
       }
     })
   })
+  shareAlongRuns(weighed)
   const sure = weighed.filter(
     ({ evidence, before }) => peopleProbability(evidence, before) < PEOPLE.doubtful / 2,
   )
@@ -41,4 +42,15 @@ export function weighPeople(
       return { ...own, evidence: Math.min(own.evidence, PEOPLE.mostSlowEvidence), lonely }
     return { ...own, evidence: own.evidence + rateEvidence(own.entry, known), lonely }
   })
+}
+
+/** Whoever is inside while the rate falls is still inside afterwards: an empty second window makes the first one empty too. */
+function shareAlongRuns(weighed: Weighed[]): void {
+  for (let k = weighed.length - 2; k >= 0; k--) {
+    const own = weighed[k]!
+    const next = weighed[k + 1]!
+    if (own.room !== next.room || own.entry.fit !== next.entry.fit || own.entry.piece.slowFirst) continue
+    if (next.entry.piece.ratePerHour < own.entry.piece.ratePerHour)
+      own.evidence = Math.max(own.evidence, next.evidence)
+  }
 }
