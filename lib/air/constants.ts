@@ -77,7 +77,7 @@ export const BACKGROUND = {
  */
 export const PEOPLE = {
   beforeDay: 0.5,
-  beforeQuiet: 0.08,
+  beforeQuiet: 0.12,
   beforeSlow: 0.93,
   mostSlowEvidence: 4,
   quietS: 4 * 3600,

@@ -36,7 +36,8 @@ export function weighPeople(
       .filter((other) => other.entry !== own.entry)
       .map((other) => other.entry.piece.ratePerHour)
     const known = [...others, ...recent]
-    const lonely = own.entry.piece.startExcessPpm < GATES.lonelyExcessPpm && unsupported(own.entry, known)
+    const limit = own.entry.changeAtStart ? GATES.lonelyExcessPpm : 1.6 * GATES.lonelyExcessPpm
+    const lonely = own.entry.piece.startExcessPpm < limit && unsupported(own.entry, known)
     // people who leave one by one look like a slow decay too: its shape alone never makes it sure
     if (own.entry.piece.slowFirst)
       return { ...own, evidence: Math.min(own.evidence, PEOPLE.mostSlowEvidence), lonely }
