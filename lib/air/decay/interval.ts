@@ -22,6 +22,8 @@ export type RateEstimate = {
   lagOne: number
   effectivePoints: number
   residualSdPpm: number
+  /** long-run variance of the residuals over what noise and mixing explain */
+  misfit: number
 }
 
 /** The same readings with noise scaled up to what their residuals show. */
@@ -84,5 +86,6 @@ export function rateEstimate(
     lagOne: biasCorrectedCorrelation(lagOneCorrelation(fit.residuals), fit.points),
     effectivePoints: degreesOfFreedom,
     residualSdPpm,
+    misfit: weighed.scale.variance,
   }
 }

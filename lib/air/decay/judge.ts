@@ -137,6 +137,7 @@ export function judgeReading(
           : 'not-identifiable',
       )
   } else doubts.push(kind === 'at-least' ? 'too-fast' : 'too-slow')
+  if (reading.estimate.misfit > GATES.misfit) doubts.push('rate-changing')
   if (!gapCheck) (gap > 0.6 ? refusals : doubts).push('gap')
   // a false zero cancels where the room's own resting level is the background, and does not where it is not
   const cancels =
