@@ -1,5 +1,6 @@
 import type { Database } from '@/db/client'
 import { catchUp } from '@/ingest/nightly/catch-up'
+import { rollUp } from '@/ingest/nightly/roll-up'
 import { seedDemo } from '@/ingest/simulator/load'
 import { ensureDemoPeople } from '@/lib/server/auth/demo-people'
 import { systemClock } from '@/lib/server/clock'
@@ -16,6 +17,9 @@ export async function prepareDemo({ database, timed, say }: Options): Promise<vo
   const dataDir = env().EBBMARK_DATA_DIR
   const now = systemClock.now()
   const demo = await timed('demo building and its record ready', () => seedDemo({ database, dataDir, now }))
+  await timed('readings rolled up', () =>
+    rollUp({ database, clock: systemClock, readingsKeptDays: env().EBBMARK_READINGS_KEPT_DAYS ?? null }),
+  )
   await timed('demo people ready', () =>
     ensureDemoPeople(database, dataDir, {
       organizationId: demo.organizationId,
