@@ -16,6 +16,8 @@ export type CleanRecord = {
   stepS: number
   /** standard deviation of one reading: noise and resolution, ppm */
   sigmaPpm: number
+  /** noise that lasts for minutes at any level, as its deviation in five-minute means, ppm; 0 where not looked for */
+  slowSdPpm: number
   resolutionPpm: number
   onChange: boolean
   deadbandPpm: number
@@ -176,6 +178,7 @@ export function cleanRecord(series: Series, sensor: SensorSpec = {}): CleanRecor
     ppm: Float64Array.from(ppm),
     stepS: steps.length > 0 ? median(steps) : 60,
     sigmaPpm,
+    slowSdPpm: 0,
     resolutionPpm,
     onChange,
     deadbandPpm: sensor.deadbandPpm ?? (onChange ? 10 : 0),

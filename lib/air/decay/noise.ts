@@ -6,15 +6,16 @@
 import { MIXING } from '@/lib/air/constants'
 import type { Binned, PiecewiseFit } from './piecewise'
 
-/** Bins with standard deviations on the long-run scale; a bin is as wide as the time to the next. */
-export function withMixing(data: Binned, backgroundPpm: number): Binned {
+/** Bins with standard deviations on the long-run scale; a bin is as wide as the time to the next. `slowSdPpm` belongs to five-minute means. */
+export function withMixing(data: Binned, backgroundPpm: number, slowSdPpm = 0): Binned {
   const n = data.timeH.length
   const sdPpm = data.sdPpm.map((sd, i) => {
     const k = Math.min(i, n - 2)
     const widthS = k >= 0 ? 3600 * (data.timeH[k + 1]! - data.timeH[k]!) : MIXING.correlationS
     const phi = Math.exp(-Math.min(widthS, 3600) / MIXING.correlationS)
     const share = MIXING.share * Math.sqrt((1 + phi) / (1 - phi)) * averaging(widthS / MIXING.correlationS)
-    return Math.hypot(sd, share * Math.max(0, data.ppm[i]! - backgroundPpm))
+    const slow = slowSdPpm * Math.sqrt(300 / Math.max(60, widthS))
+    return Math.hypot(sd, slow, share * Math.max(0, data.ppm[i]! - backgroundPpm))
   })
   return { ...data, sdPpm }
 }

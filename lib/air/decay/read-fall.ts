@@ -43,6 +43,7 @@ export function fallBins(record: CleanRecord, fall: Fall, toS: number, backgroun
   return withMixing(
     binRecord(record, fall.fromS, toS, width, fall.fromS, DETECTION.binGrowth),
     background.ppm,
+    record.slowSdPpm,
   )
 }
 

@@ -45,6 +45,13 @@ export function nightsFloor(track: Track, falls: readonly Fall[], day: DayWindow
 /** Scatter of resting levels up to which they agree, ppm (chosen). */
 const AGREEING_PPM = 14
 
+/** What five-minute means scatter beyond the white noise of their readings, ppm. */
+function slowNoise(record: CleanRecord, track: Track): number {
+  const readings = Math.max(1, 300 / Math.max(1, record.stepS))
+  const white = record.sigmaPpm / Math.sqrt(readings)
+  return record.onChange ? 0 : Math.sqrt(Math.max(0, track.sigmaPpm ** 2 - 1.3 * white ** 2))
+}
+
 /** Opens a room's record for a day; `history` holds the floors of other nights. */
 export function openRecord(
   room: RoomSpec,
@@ -52,10 +59,11 @@ export function openRecord(
   day: DayWindow,
   nights: readonly QuietFloor[] = [],
 ): RoomRecord {
-  const record = cleanRecord(series, room.sensor)
+  const clean = cleanRecord(series, room.sensor)
   const fromS = day.dayStartS - 7200
   const toS = day.dayEndS + 43_200
-  const track = levelTrack(record, fromS, toS)
+  const track = levelTrack(clean, fromS, toS)
+  const record = { ...clean, slowSdPpm: slowNoise(clean, track) }
   const falls = findFalls(track)
   const lowest = lowestLevel(track, fromS, toS, day.date)
   const history = nights.filter((entry) => entry.date !== day.date)

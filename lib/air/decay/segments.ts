@@ -103,15 +103,13 @@ function slideBreaks(
 ): PiecewiseFit {
   let best = fit
   let stride = firstStride
-  for (let round = 0; round < 12; round++) {
+  for (let round = 0; round < 14; round++) {
     let moved = false
     for (let k = 0; k < best.breaksH.length; k++) {
       for (const direction of [-1, 1]) {
-        const at = nearestBin(data, best.breaksH[k]!) + direction * stride
-        const candidate = data.timeH[at]
-        if (candidate === undefined) continue
+        const candidate = best.breaksH[k]! + direction * stride * spacingAt(data, best.breaksH[k]!)
         const others = best.breaksH.filter((_, i) => i !== k)
-        if (!apart(others, candidate, data, leastH)) continue
+        if (!inside(data, candidate) || !apart(others, candidate, data, leastH)) continue
         const trial = refit(data, [...others, candidate], prior, best, 4)
         if (trial && trial.chiSquared < best.chiSquared - 1e-6) {
           best = trial
@@ -119,12 +117,21 @@ function slideBreaks(
         }
       }
     }
-    if (!moved) {
-      if (stride === 1) break
-      stride = Math.max(1, Math.floor(stride / 3))
-    }
+    if (moved) continue
+    // down to a third of a bin: a change seldom falls on the middle of one
+    if (stride < 0.5) break
+    stride /= 3
   }
   return best
+}
+
+const inside = (data: Binned, timeH: number) =>
+  timeH > data.timeH[1]! && timeH < data.timeH[data.timeH.length - 2]!
+
+/** Time between bins around an instant, hours. */
+function spacingAt(data: Binned, timeH: number): number {
+  const at = Math.min(data.timeH.length - 2, nearestBin(data, timeH))
+  return data.timeH[at + 1]! - data.timeH[at]!
 }
 
 function nearestBin(data: Binned, timeH: number): number {
