@@ -202,7 +202,10 @@ async function startChildren(env) {
   state.children = specs.map((spec) => new Child(spec, context))
   const ingest = outsideBroker ? `ingest workers (${workerCount})` : 'broker'
   await step(`${ingest}, jobs, mailbox and web started`, async () => {
-    await Promise.all(state.children.map((child) => child.start()))
+    const ready = Promise.all(state.children.map((child) => child.start()))
+    const late = new Promise((resolve) => setTimeout(() => resolve('late'), 60_000).unref())
+    if ((await Promise.race([ready, late])) === 'late')
+      say('not every process is ready yet; going on without it')
     await answersHttp(`http://${host === '0.0.0.0' ? '127.0.0.1' : host}:${env.PORT}/sign-in`)
   })
   if (!demo) return

@@ -64,7 +64,7 @@ export function RoomRow({
             high={row.rateHigh}
             basis={row.basisRate}
             max={max}
-            widthPx={96}
+            widthPx={84}
             ring={ring}
             words={barWords(row)}
           />

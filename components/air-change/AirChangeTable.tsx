@@ -20,7 +20,10 @@ export function AirChangeTable({
   dayWords: (night: string) => string
 }) {
   return (
-    <Table caption="Air-change rate of every room against its basis">
+    <Table
+      caption="Air-change rate of every room against its basis"
+      className="max-sm:[&_td]:pr-2 max-sm:[&_th]:pr-2"
+    >
       <thead>
         <tr>
           <Th sort={sortOf('room')}>Room</Th>

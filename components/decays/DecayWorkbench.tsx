@@ -81,6 +81,11 @@ export function DecayWorkbench({
         </>
       }
     >
+      {save && (
+        <p className="no-print sticky top-0 z-20 -mx-5 border-b border-rule bg-paper px-5 py-[9px] text-2 md:hidden">
+          <a href="#decision">{moved ? 'Keep this window, or decide otherwise' : 'Your decision'}</a>
+        </p>
+      )}
       <h1 aria-live="polite" className="mt-1 max-w-[34em] text-[29px] leading-[1.25] font-[400]">
         <Finding decay={decay} figures={figures} windowWords={windowWords} />
       </h1>

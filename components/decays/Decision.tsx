@@ -29,14 +29,15 @@ export function Decision({
   const [answer, act, busy] = useActionState<Answer | null, FormData>(save as never, null)
   const problem = answer && !answer.ok ? answer : null
   return (
-    <form action={act}>
+    <form action={act} id="decision" className="scroll-mt-4">
+      <input type="hidden" name="decision" value={choice ?? ''} />
       <input type="hidden" name="decayId" value={decay.id} />
       <input type="hidden" name="fromS" value={window.fromS} />
       <input type="hidden" name="toS" value={window.toS} />
       <fieldset>
         <legend className="sr-only">Your decision</legend>
         <RadioRow
-          name="decision"
+          name="choice"
           value="keep"
           words="Keep"
           aside={`counts in ${decay.roomName}’s week`}
@@ -45,7 +46,7 @@ export function Decision({
           disabled={decay.quality === 'refused'}
         />
         <RadioRow
-          name="decision"
+          name="choice"
           value="leave out"
           words="Leave out"
           aside="stays on file, not counted"
@@ -53,7 +54,7 @@ export function Decision({
           onChange={() => onChoice('leave out')}
         />
         <RadioRow
-          name="decision"
+          name="choice"
           value="keep with window"
           words="Keep with my window"
           aside={moved ? windowWords : 'move an edge first'}
