@@ -1,12 +1,9 @@
 import { and, asc, desc, eq, gte, isNull, sql } from 'drizzle-orm'
+import { silentAfterS } from '@/lib/air/room-state'
 import type { FirstReading, Position, Refusal, SensorRow, Standing } from '@/lib/wire/sensors'
 import { deviceIdKey } from '@/lib/wire/topics'
 import type { Tx } from '../client'
 import { buildings, floors, placements, refusedMessages, rooms, sensors } from '../schema'
-
-/** A sensor is silent when it missed this many of its own intervals, and never before three minutes. */
-export const missedIntervals = 5
-const leastSilenceS = 180
 
 const latest = {
   atS: sql<
@@ -104,7 +101,7 @@ function standingOf(row: Row, now: Date): [Standing, string | null] {
   if (row.atS === null || row.receivedS === null)
     return ['awaiting first reading', 'Registered, nothing heard yet.']
   const silentS = now.getTime() / 1000 - Math.max(row.atS, row.receivedS)
-  if (silentS > Math.max(leastSilenceS, missedIntervals * row.sensor.intervalS)) {
+  if (silentS > silentAfterS(row.sensor.intervalS)) {
     return [
       'silent',
       `Nothing heard for ${words(silentS)}; it should speak every ${words(row.sensor.intervalS)}.`,
