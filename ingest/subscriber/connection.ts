@@ -23,6 +23,8 @@ export type ConnectionOptions = {
   receiveMaximum: number
   /** how long the broker keeps what comes while nobody is connected; 0: not at all */
   sessionExpiryS: number
+  /** a filter of earlier times that a resumed session may still hold: taken away */
+  formerFilter?: string
   /** takes the subscription away instead of making it: what is queued still comes */
   drains?: boolean
   /** `settle` once: committed is acknowledged, dropped ends the connection so that the broker sends again */
@@ -168,7 +170,7 @@ export class Connection {
     if (packet.cmd === 'publish') this.#takePublish(packet)
     else if (packet.cmd === 'connack') this.#takeConnack(packet)
     else if (packet.cmd === 'suback') this.#takeSuback(packet)
-    else if (packet.cmd === 'unsuback') this.#open(this.#sessionPresent)
+    else if (packet.cmd === 'unsuback' && this.#options.drains) this.#open(this.#sessionPresent)
     else if (packet.cmd === 'disconnect') this.#end(new Error(reasonInWords(packet.reasonCode ?? 0x80)))
   }
 
@@ -190,8 +192,12 @@ export class Connection {
         if (performance.now() - this.#busyMs > backlogOverMs) this.#isHeld = false
       }, 200),
     )
-    if (this.#options.drains) this.#send({ cmd: 'unsubscribe', messageId: 1, unsubscriptions: [filter] })
+    const { drains, formerFilter } = this.#options
+    if (drains) this.#send({ cmd: 'unsubscribe', messageId: 1, unsubscriptions: [filter] })
     else this.#send({ cmd: 'subscribe', messageId: 1, subscriptions: [{ topic: filter, qos: 1 }] })
+    // after the subscription, so that no message falls between the two
+    if (formerFilter !== undefined && packet.sessionPresent)
+      this.#send({ cmd: 'unsubscribe', messageId: 2, unsubscriptions: [formerFilter] })
   }
 
   #takeSuback(packet: ISubackPacket): void {

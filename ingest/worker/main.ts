@@ -5,7 +5,7 @@ import { Subscriber } from '../subscriber/subscriber'
 import { Credentials } from './credentials'
 import { drainOlderSessions } from './drain'
 import { type IngestParts, type IngestWork, runIngestProcess } from './process'
-import { RECEIVE_MAXIMUM, SESSION_EXPIRY_S, SHARED_FILTER, workerClientId } from './shared'
+import { filtersFor, RECEIVE_MAXIMUM, SESSION_EXPIRY_S, workerClientId } from './shared'
 import { TopicIntake } from './topic-intake'
 
 await runIngestProcess(`worker ${env().INGEST_WORKER}`, 'ingest', open)
@@ -22,7 +22,7 @@ async function open({ database, ingest, log, nowMs }: IngestParts): Promise<Inge
   const subscriber = new Subscriber({
     address,
     clientId: workerClientId(MQTT_CLIENT_ID, INGEST_WORKER),
-    filter: SHARED_FILTER,
+    ...filtersFor(INGEST_WORKERS),
     receiveMaximum: RECEIVE_MAXIMUM,
     sessionExpiryS: SESSION_EXPIRY_S,
     acceptsOlder: false,

@@ -1,11 +1,11 @@
 import { spawn } from 'node:child_process'
 import { cpus } from 'node:os'
 import path from 'node:path'
-import pg from 'pg'
 import { type Database, openDatabase } from '@/db/client'
 import { migrateDatabase } from '@/db/migrate'
 import { makeSite, rows, startBroker, type TestSensor } from '../support/broker'
 import { startThrowAwayCluster } from '../support/cluster'
+import { makeDurable } from './ingest/durable'
 import { type Usage, usageOf } from './ingest/processes'
 import { type Raw, rawInserts } from './ingest/raw'
 import { options, printTable, wholeNumber, writeReport } from './report'
@@ -37,7 +37,7 @@ try {
 
 async function bench(): Promise<void> {
   await migrateDatabase(ownerUrl, new Date())
-  await makeDurable()
+  await makeDurable(cluster.superuserUrl)
   const database = openDatabase({ url: appUrl, poolSize: 2 })
   const site = await makeSite(database, 'bench')
   const sensors: TestSensor[] = []
@@ -75,16 +75,6 @@ async function bench(): Promise<void> {
     raw,
   })
   await database.close()
-}
-
-/** The throw-away cluster is careless about a power cut; what is measured here must not be. */
-async function makeDurable(): Promise<void> {
-  const client = new pg.Client({ connectionString: cluster.superuserUrl })
-  await client.connect()
-  for (const setting of ['fsync', 'full_page_writes', 'synchronous_commit'])
-    await client.query(`ALTER SYSTEM SET ${setting} = on`)
-  await client.query('SELECT pg_reload_conf()')
-  await client.end()
 }
 
 async function countReadings(database: Database): Promise<number> {

@@ -9,8 +9,12 @@ export type WorkerProcess = {
 }
 
 /** Starts a real process of the ingest (`ingest/worker/main.ts`, `ingest/feeds/main.ts`) and waits until it says that it is ready. */
-export async function startIngestMain(main: string, env: Record<string, string>): Promise<WorkerProcess> {
-  const child = spawn(process.execPath, ['--import', 'tsx', path.resolve(main)], {
+export async function startIngestMain(
+  main: string,
+  env: Record<string, string>,
+  words: readonly string[] = [],
+): Promise<WorkerProcess> {
+  const child = spawn(process.execPath, ['--import', 'tsx', path.resolve(main), ...words], {
     env: { PATH: process.env.PATH, NODE_ENV: 'test', ...env },
     stdio: ['ignore', 'pipe', 'pipe', 'ipc'],
   })

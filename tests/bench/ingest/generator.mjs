@@ -1,7 +1,8 @@
 // Load generator of the ingest benchmark: MQTT 3.1.1 over plain sockets, as little work as can be, for it shares the cores with what it measures.
 import net from 'node:net'
 
-const { port, devices, window, perMessage, seconds, baseMs } = JSON.parse(process.argv[2])
+// With `each`, every device sends that many messages and the process ends when all are acknowledged; else it measures for some seconds.
+const { port, devices, window, perMessage, seconds, baseMs, each } = JSON.parse(process.argv[2])
 
 /** @param {string} text */
 const mqttText = (text) => {
@@ -23,6 +24,7 @@ let isOver = false
 let measured = 0
 let isMeasuring = false
 const latenciesMs = []
+let unanswered = each === undefined ? Number.POSITIVE_INFINITY : each * devices.length
 
 /** @param {{ deviceId: string, secret: string, topic: string }} device */
 function connect(device) {
@@ -32,13 +34,15 @@ function connect(device) {
   const socket = net.connect({ port, host: '127.0.0.1', noDelay: true })
   socket.write(packet(0x10, Buffer.concat([head, name, name, mqttText(device.secret)])))
   let next = 0
+  let left = each ?? Number.POSITIVE_INFINITY
   let id = 0
   let open = 0
   let answered = 4 // bytes of the CONNACK still to come
   const sentMs = new Float64Array(65536)
   const send = () => {
     socket.cork()
-    while (open < window && !isOver) {
+    while (open < window && left > 0 && !isOver) {
+      left--
       id = (id % 65535) + 1
       sentMs[id] = performance.now()
       socket.write(
@@ -67,17 +71,23 @@ function connect(device) {
     let at = 0
     for (; at + 4 <= bytes.length; at += 4) {
       open--
+      unanswered--
       if (!isMeasuring) continue
       measured++
       if (measured % 16 === 0) latenciesMs.push(now - sentMs[(bytes[at + 2] << 8) | bytes[at + 3]])
     }
     rest = bytes.subarray(at)
     send()
+    if (unanswered === 0 && !isOver) {
+      isOver = true
+      process.send({ phase: 'answered' }, () => process.exit(0))
+    }
   })
   socket.on('close', () => isOver || process.exit(3))
 }
 
 devices.forEach(connect)
+if (each !== undefined) await new Promise(() => undefined)
 await new Promise((resolve) => setTimeout(resolve, 2000))
 isMeasuring = true
 process.send({ phase: 'measuring' })

@@ -5,6 +5,7 @@ import { migrateDatabase } from '@/db/migrate'
 import { type BrokerProcess, makeSite, rows, startBroker, type TestSensor } from '@/tests/support/broker'
 import { freePort, startThrowAwayCluster } from '@/tests/support/cluster'
 import { co2PpmOf, finishPublishers, type Publisher, startPublishers } from '@/tests/support/publishers'
+import { randomFrom } from '@/tests/support/random'
 
 const publisherCount = 20
 const everyMs = 30
@@ -46,17 +47,6 @@ async function launch(): Promise<void> {
     if (how !== 'SIGKILL' && how !== 0) ownEnds.push(`${how}: ${started.output().slice(-2000)}`)
     if (brokerWanted) await launch()
   })
-}
-
-/** mulberry32, so that a printed seed repeats the choice and the order of kills. */
-function randomFrom(start: number): () => number {
-  let state = start | 0
-  return () => {
-    state = (state + 0x6d2b79f5) | 0
-    let t = Math.imul(state ^ (state >>> 15), 1 | state)
-    t = (t + Math.imul(t ^ (t >>> 7), 61 | t)) ^ t
-    return ((t ^ (t >>> 14)) >>> 0) / 4294967296
-  }
 }
 
 function postmasterPid(): number {

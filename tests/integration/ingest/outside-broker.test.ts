@@ -226,6 +226,14 @@ describe('an outside broker', () => {
       ),
     ).toBe(100)
     await says(one, 'took over the queue')
+    await publish(client, sensor.topic, { t: t(100), co2_ppm: 600 })
+    await eventually(
+      () => storedCount([sensor]),
+      (count) => count === 101,
+    )
+    await one.end('SIGTERM')
+    // the subscription that it had shared was taken away: nothing came twice
+    expect(one.output()).toMatch(/"messages":101,.*"msg":"stopped"/)
     expect(one.output()).toContain('"clientId":"ebbmark-worker-2"')
   })
 
