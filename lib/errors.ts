@@ -5,6 +5,7 @@ export const PROBLEMS = {
   'not-allowed': { status: 403, title: 'Your roles do not cover this' },
   'not-found': { status: 404, title: 'Not here, or not yours to see' },
   conflict: { status: 409, title: 'It has changed meanwhile' },
+  'too-large': { status: 413, title: 'Too much in one request' },
   invalid: { status: 422, title: 'Some of it is not usable' },
   'too-many': { status: 429, title: 'Too many tries' },
   failed: { status: 500, title: 'Something went wrong on our side' },

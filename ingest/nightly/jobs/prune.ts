@@ -1,3 +1,4 @@
+import { ANSWER_KEPT_MS, pruneApiAnswers } from '@/db/changes/api-keys'
 import { pruneSessions, pruneSignInEvents } from '@/db/changes/prune'
 import type { ScheduledJob } from '../job'
 
@@ -13,5 +14,6 @@ export const pruneJob: ScheduledJob = {
       const daysAgo = (days: number) => new Date(clock.now().getTime() - days * DAY_MS)
       await pruneSessions(tx, { endedBefore: daysAgo(SESSION_DAYS) })
       await pruneSignInEvents(tx, { before: daysAgo(SIGN_IN_DAYS) })
+      await pruneApiAnswers(tx, { before: new Date(clock.now().getTime() - ANSWER_KEPT_MS) })
     }),
 }
