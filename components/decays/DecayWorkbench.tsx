@@ -143,17 +143,19 @@ function Finding({
   if (figures.rate === null) {
     return (
       <>
-        Air-change rate <b>{interval} per hour</b>, {windowWords}, {decay.mode}.
+        Air-change rate <b>{interval} per hour</b>, {windowWords}, {modeWords(decay.mode)}.
       </>
     )
   }
   return (
     <>
-      Air-change rate <b>{rateWords(figures.rate)} per hour</b> ({interval}), {windowWords}, {decay.mode}.
-      Mean age of air {Math.round(60 / figures.rate)} min if well mixed.
+      Air-change rate <b>{rateWords(figures.rate)} per hour</b> ({interval}), {windowWords},{' '}
+      {modeWords(decay.mode)}. Mean age of air {Math.round(60 / figures.rate)} min if well mixed.
     </>
   )
 }
+
+const modeWords = (mode: string) => (mode === 'unknown' ? 'mode unknown' : mode)
 
 /** What the rate comes to as outdoor air, where it is outdoor air. */
 function Meaning({ decay, figures }: { decay: DecayDetail; figures: Figures }) {

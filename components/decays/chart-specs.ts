@@ -44,14 +44,10 @@ export function linearSpec(
               labelInside: true,
             },
           ],
-    uprights: [
-      ...(decay.lastPersonLeftS === null
+    uprights:
+      decay.lastPersonLeftS === null
         ? []
-        : [{ look: 'note' as const, atS: decay.lastPersonLeftS, words: 'last person left' }]),
-      ...(decay.rateChangeS === null
-        ? []
-        : [{ look: 'change' as const, atS: decay.rateChangeS, words: 'rate changes' }]),
-    ],
+        : [{ look: 'note', atS: decay.lastPersonLeftS, words: 'last person left' }],
   }
 }
 
@@ -74,6 +70,8 @@ export function logSpec(
         ]
       : [],
     ...(curve ? { band: { timeS: curve.timeS, low: above(curve.lowPpm), high: above(curve.highPpm) } } : {}),
+    uprights:
+      decay.rateChangeS === null ? [] : [{ look: 'change', atS: decay.rateChangeS, words: 'rate changes' }],
     levels: [{ look: 'floor', value: 50, label: '50 ppm' }],
   }
 }

@@ -29,8 +29,8 @@ export default async function DecayPage({ params }: { params: Promise<{ decay: s
         <Link href={paths.room(decay.roomId)}>
           {decay.roomNumber} {decay.roomName}
         </Link>{' '}
-        · {nightWords(decay.night)} · {decay.sensor}, every {spanWords(decay.intervalS)} · mode from{' '}
-        {decay.modeFrom ?? 'nothing known'}
+        · {nightWords(decay.night)} · {decay.sensor}, every {spanWords(decay.intervalS)} ·{' '}
+        {decay.modeFrom ? `mode from ${decay.modeFrom}` : 'mode not known'}
       </p>
       <DecayWorkbench
         key={decay.id}
