@@ -24,7 +24,7 @@ import {
   type RoomRecord,
   readFalls,
 } from './decay/room-record'
-import { weighPeople } from './decay/weigh'
+import { mildStep, weighPeople } from './decay/weigh'
 import type { Background, Decay, RoomSpec, Series, SupplyChange } from './types'
 
 /** What earlier nights left behind for a room. */
@@ -179,6 +179,7 @@ function finish(day: BuildingDay, prepared: Prepared, seen: SupplyStop[], habit?
           demandRoom,
           stops,
           lonely,
+          mild: mildStep(entry, own, stops),
           floorsAgree: opened.floorsAgree,
         }),
       )

@@ -49,6 +49,8 @@ export const GATES = {
   points: 5,
   /** below this many readings in two and a half time constants the start is too uncertain for an accepted figure */
   tellingPoints: 6,
+  /** a step down by less than this ratio, that no fellow shares, is doubtful */
+  mildStep: 2,
   /** residuals this many times the variance that noise and mixing explain speak of something else in the room */
   misfit: 4,
   /** largest gap as a share of the window */

@@ -86,6 +86,8 @@ export type Outcome = {
   people: number
   /** other decays of this room show demand control */
   demandRoom: boolean
+  /** one of two rates that differ mildly, with no fellow to confirm the step */
+  mild: boolean
   /** a small decay at a rate that no other decay of the room shows */
   lonely: boolean
   /** see RoomRecord */
@@ -95,10 +97,11 @@ export type Outcome = {
 /** Spread of a neighbour's share up to which the total rate is accepted. */
 const SURE_SHARE = 0.25
 
-function suspicionOf({ room, people, entry, demandRoom, floorsAgree, lonely }: Outcome): Suspicion {
+function suspicionOf({ room, people, entry, demandRoom, floorsAgree, lonely, mild }: Outcome): Suspicion {
   const doubts: Reason[] = []
   const refusals: Reason[] = []
   if (room.air === 'recirculating') doubts.push('recirculation-possible')
+  if (mild) doubts.push('rate-changing')
   if (lonely) doubts.push('start-too-low')
   if (demandRoom && !entry.demand) doubts.push('demand-controlled')
   const unsure = entry.coupled ? entry.coupled.shareSd > SURE_SHARE : room.neighbour !== undefined

@@ -42,8 +42,10 @@ export function shapeEvidence(
   const information = Math.max(1e-9, 1 / variance - 1 / prior.sdPpm ** 2)
   const seen = (fit.backgroundPpm / variance - prior.ppm / prior.sdPpm ** 2) / information - prior.ppm
   const spread = prior.sdPpm ** 2 + 1 / information
-  const lift = Math.max(smallest, seen)
-  return Math.min(8, ((seen - lift) ** 2 - seen ** 2) / (2 * spread))
+  // a floor seen far below the background means a rate that rises: people who leave one by one, no proof of an empty room
+  const floor = Math.max(seen, -0.7 * Math.sqrt(spread))
+  const lift = Math.max(smallest, floor)
+  return Math.min(8, ((floor - lift) ** 2 - floor ** 2) / (2 * spread))
 }
 
 /** Log likelihood ratio of "empty" from rates that this room is known to have: near one of them speaks for empty, below them all a little against. */

@@ -1,5 +1,6 @@
 /** All decays of a room's day weighed together: was the room empty, and does any other decay speak for a lonely one? */
 import { GATES, PEOPLE } from '@/lib/air/constants'
+import type { SupplyStop } from './modes'
 import { peopleProbability, rateEvidence, shapeEvidence, unsupported } from './people'
 import type { ReadFall } from './room-record'
 import type { Reading } from './run'
@@ -54,4 +55,19 @@ function shareAlongRuns(weighed: Weighed[]): void {
     if (next.entry.piece.ratePerHour < own.entry.piece.ratePerHour)
       own.evidence = Math.max(own.evidence, next.evidence)
   }
+}
+
+/**
+ * True when a window's rate steps down only mildly and no fellow slowed at that instant: a fan that stops leaves a fraction, a supply that follows
+ * CO2 eases off, and two steps drawn through that ease speak for no moment of it.
+ */
+export function mildStep(entry: Reading, all: readonly Reading[], stops: readonly SupplyStop[]): boolean {
+  const beside = all.filter((other) => other.fit === entry.fit && Math.abs(other.index - entry.index) === 1)
+  return beside.some((other) => {
+    const [first, second] = other.index < entry.index ? [other, entry] : [entry, other]
+    const atS = first!.toS
+    if (stops.some((stop) => Math.abs(stop.atS - atS) < 900)) return false
+    const ratio = first!.piece.ratePerHour / second!.piece.ratePerHour
+    return ratio > 1 && ratio < GATES.mildStep
+  })
 }
