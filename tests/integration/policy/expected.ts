@@ -4,7 +4,7 @@ import type { Role } from '@/lib/policy/roles'
  * Who may use what, written by hand from the four users' jobs and never read from the permission table: a page, handler or action that
  * is not here, or one here that is gone, fails the matrix.
  */
-export type Holders = readonly Role[] | 'open'
+export type Holders = readonly Role[] | 'open' | 'api-key'
 
 const everyone: Holders = ['administrator', 'operator', 'engineer', 'installer', 'tenant']
 const rounds: Holders = ['administrator', 'operator']
@@ -16,6 +16,9 @@ const reviewing: Holders = ['engineer']
 const digests: Holders = ['administrator', 'operator', 'tenant']
 const sending: Holders = ['administrator', 'operator']
 const mailbox: Holders = ['administrator', 'operator']
+
+/** Programs with an API key alone: no person's session counts, so every person is told 401. */
+const programs: Holders = 'api-key'
 
 export const EXPECTED_PAGES: Record<string, Holders> = {
   '/': 'open',
@@ -45,6 +48,7 @@ export const EXPECTED_ROUTES: Record<string, Holders> = {
   'GET /api/v1/digests': digests,
   'GET /api/v1/live': everyone,
   'GET /api/v1/readings': rooms,
+  'POST /api/v1/readings': programs,
   'GET /api/v1/rooms': rooms,
   'GET /api/v1/rooms/[room]': rooms,
   'GET /api/v1/sensors': sensors,
