@@ -24,7 +24,7 @@ type Span = { buildingId: number; timeZone: string; fromMs: number; toMs: number
 const newOrChanged = (source: string) => `
   INSERT INTO reading_rollups AS u (start, sensor_id, resolution_s, lowest_ppm, mean_ppm, highest_ppm, count)
   SELECT m.start, m.sensor_id, $4, m.lowest, m.mean, m.highest, m.count FROM (${source}) AS m
-  LEFT JOIN reading_rollups o ON o.sensor_id = m.sensor_id AND o.resolution_s = $4 AND o.start = m.start
+  LEFT JOIN reading_rollups o ON o.sensor_id = m.sensor_id AND o.resolution_s = $4 AND o.start = m.start AND o.start >= $2 AND o.start < $3
   WHERE o.sensor_id IS NULL OR (o.lowest_ppm, o.mean_ppm, o.highest_ppm, o.count) IS DISTINCT FROM (m.lowest, m.mean, m.highest, m.count)
   ORDER BY m.start, m.sensor_id
   ON CONFLICT (sensor_id, resolution_s, start) DO UPDATE SET lowest_ppm = excluded.lowest_ppm, mean_ppm = excluded.mean_ppm,

@@ -4,6 +4,7 @@ import { analyseNightJob } from './analyse-night'
 import { judgeWeeksJob } from './judge-weeks'
 import { makeMonthsJob } from './make-months'
 import { pruneJob } from './prune'
+import { retainJob } from './retain'
 import { rollUpJob } from './roll-up'
 import { sendDigestJob } from './send-digest'
 import { tickJob } from './tick'
@@ -21,4 +22,4 @@ export const queuedJobs = [
 ] as const
 
 /** Jobs that the schedule starts. */
-export const scheduledJobs: readonly ScheduledJob[] = [tickJob, rollUpJob, makeMonthsJob, pruneJob]
+export const scheduledJobs: readonly ScheduledJob[] = [tickJob, rollUpJob, retainJob, makeMonthsJob, pruneJob]
