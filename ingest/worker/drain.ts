@@ -1,6 +1,6 @@
 import type { Logger } from 'pino'
-import type { BrokerAddress } from '../subscriber/address'
-import { Connection, type ConnectionOptions } from '../subscriber/connection'
+import type { BrokerAddress } from '@/lib/server/mqtt/address'
+import { Connection, type ConnectionOptions } from '@/lib/server/mqtt/connection'
 import { pause } from './pause'
 import { RECEIVE_MAXIMUM, SESSION_EXPIRY_S, SHARED_FILTER, workerClientId } from './shared'
 

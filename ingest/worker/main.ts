@@ -1,11 +1,11 @@
 /** One ingest worker beside an outside broker: a share of the messages of one shared subscription, acknowledged after the commit. */
 import { env } from '@/lib/server/env'
-import { parseBrokerUrl, readCaFile } from '../subscriber/address'
-import { Subscriber } from '../subscriber/subscriber'
+import { parseBrokerUrl, readCaFile } from '@/lib/server/mqtt/address'
 import { Credentials } from './credentials'
 import { drainOlderSessions } from './drain'
 import { type IngestParts, type IngestWork, runIngestProcess } from './process'
 import { filtersFor, RECEIVE_MAXIMUM, SESSION_EXPIRY_S, workerClientId } from './shared'
+import { Subscriber } from './subscriber'
 import { TopicIntake } from './topic-intake'
 
 await runIngestProcess(`worker ${env().INGEST_WORKER}`, 'ingest', open)

@@ -1,5 +1,6 @@
 import type { ReadingRow } from '@/db/changes/readings'
 import type { SupplyStateRow } from '@/db/changes/supply-states'
+import type { Outcome } from '@/lib/server/mqtt/acknowledgements'
 import type { RefusalReason } from '@/lib/wire/mqtt'
 
 /** Who a message or a connect came from, as refusals name it. */
@@ -13,8 +14,7 @@ export type Refusal = Source & {
   receivedMs: number
 }
 
-/** What became of a message: in the database, or given back because the database is away (its device sends it again). */
-export type Outcome = 'committed' | 'dropped'
+export type { Outcome }
 
 /** One message taken from a device. `settle` is called once; until then the device waits for its acknowledgement. */
 export type Message = {

@@ -1,7 +1,7 @@
 import type { Device } from '@/db/queries/devices'
+import type { Incoming } from '@/lib/server/mqtt/connection'
 import { type RefusalReason, sampleOf } from '@/lib/wire/mqtt'
 import { gatewayUserName, parseTopic, type Topic, topicOf } from '@/lib/wire/topics'
-import type { Incoming } from '../subscriber/connection'
 import type { Credentials } from './credentials'
 import type { Ingest } from './ingest'
 import type { Message, Outcome } from './messages'

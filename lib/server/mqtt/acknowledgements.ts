@@ -1,4 +1,5 @@
-import type { Outcome } from '../worker/messages'
+/** What became of a message: in the database, or given back because the database is away (its sender sends it again). */
+export type Outcome = 'committed' | 'dropped'
 
 /** A publish that waits for its acknowledgement. */
 type Held = { id: number; bytes: number; settled: boolean }

@@ -6,8 +6,7 @@ import mqttPacket, {
   type ISubackPacket,
   type Packet,
 } from 'mqtt-packet'
-import type { Outcome } from '../worker/messages'
-import { Acknowledgements } from './acknowledgements'
+import { Acknowledgements, type Outcome } from './acknowledgements'
 import type { BrokerAddress } from './address'
 import { connackInWords, isOlderBroker, reasonInWords } from './codes'
 

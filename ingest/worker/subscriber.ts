@@ -1,6 +1,6 @@
-import type { Outcome } from '../worker/messages'
-import { pause, retryDelayMs } from '../worker/pause'
-import { Connection, type ConnectionOptions, OlderBroker } from './connection'
+import type { Outcome } from '@/lib/server/mqtt/acknowledgements'
+import { Connection, type ConnectionOptions, OlderBroker } from '@/lib/server/mqtt/connection'
+import { pause, retryDelayMs } from './pause'
 
 export type SubscriberOptions = Omit<ConnectionOptions, 'version' | 'onMessage'> & {
   onMessage: (
