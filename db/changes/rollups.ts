@@ -23,8 +23,8 @@ type Span = { buildingId: number; timeZone: string; fromMs: number; toMs: number
 
 const newOrChanged = (source: string) => `
   INSERT INTO reading_rollups AS u (start, sensor_id, resolution_s, lowest_ppm, mean_ppm, highest_ppm, count)
-  SELECT m.start, m.sensor_id, $4, m.lowest, m.mean, m.highest, m.count FROM (${source}) AS m
-  LEFT JOIN reading_rollups o ON o.sensor_id = m.sensor_id AND o.resolution_s = $4 AND o.start = m.start AND o.start >= $2 AND o.start < $3
+  SELECT m.start, m.sensor_id, $4::int, m.lowest, m.mean, m.highest, m.count FROM (${source}) AS m
+  LEFT JOIN reading_rollups o ON o.sensor_id = m.sensor_id AND o.resolution_s = $4::int AND o.start = m.start AND o.start >= $2 AND o.start < $3
   WHERE o.sensor_id IS NULL OR (o.lowest_ppm, o.mean_ppm, o.highest_ppm, o.count) IS DISTINCT FROM (m.lowest, m.mean, m.highest, m.count)
   ORDER BY m.start, m.sensor_id
   ON CONFLICT (sensor_id, resolution_s, start) DO UPDATE SET lowest_ppm = excluded.lowest_ppm, mean_ppm = excluded.mean_ppm,
@@ -42,9 +42,9 @@ const fromFiner = (start: string) =>
   SELECT f.sensor_id, ${start} AS start, min(f.lowest_ppm) AS lowest, (sum(f.mean_ppm::float8 * f.count) / sum(f.count))::real AS mean,
     max(f.highest_ppm) AS highest, sum(f.count)::int AS count
   FROM sensors s JOIN reading_rollups f ON f.sensor_id = s.id
-  WHERE s.building_id = $1 AND f.resolution_s = $5 AND f.start >= $2 AND f.start < $3 GROUP BY 1, 2`)
+  WHERE s.building_id = $1 AND f.resolution_s = $5::int AND f.start >= $2 AND f.start < $3 GROUP BY 1, 2`)
 
-const fromFinerUtc = fromFiner(`date_bin($4 * interval '1 second', f.start, 'epoch')`)
+const fromFinerUtc = fromFiner(`date_bin(make_interval(secs => $4::int), f.start, 'epoch')`)
 const fromFinerDay = fromFiner(`date_trunc('day', f.start, $6)`)
 
 const withoutReadings = `
@@ -53,15 +53,15 @@ const withoutReadings = `
     AND NOT EXISTS (SELECT FROM readings r WHERE r.sensor_id = u.sensor_id AND r.at >= u.start AND r.at < u.start + interval '5 minutes')`
 
 const withoutFiner = `
-  DELETE FROM reading_rollups u USING sensors s WHERE s.building_id = $1 AND u.sensor_id = s.id AND u.resolution_s = $4
+  DELETE FROM reading_rollups u USING sensors s WHERE s.building_id = $1 AND u.sensor_id = s.id AND u.resolution_s = $4::int
     AND u.start >= $2 AND u.start < $3
-    AND NOT EXISTS (SELECT FROM reading_rollups f WHERE f.sensor_id = u.sensor_id AND f.resolution_s = $5
-      AND f.start >= u.start AND f.start < u.start + $4 * interval '1 second')`
+    AND NOT EXISTS (SELECT FROM reading_rollups f WHERE f.sensor_id = u.sensor_id AND f.resolution_s = $5::int
+      AND f.start >= u.start AND f.start < u.start + make_interval(secs => $4::int))`
 
 const withoutDay = `
-  DELETE FROM reading_rollups u USING sensors s WHERE s.building_id = $1 AND u.sensor_id = s.id AND u.resolution_s = $4
+  DELETE FROM reading_rollups u USING sensors s WHERE s.building_id = $1 AND u.sensor_id = s.id AND u.resolution_s = $4::int
     AND u.start >= $2 AND u.start < $3
-    AND NOT EXISTS (SELECT FROM reading_rollups f WHERE f.sensor_id = u.sensor_id AND f.resolution_s = $5
+    AND NOT EXISTS (SELECT FROM reading_rollups f WHERE f.sensor_id = u.sensor_id AND f.resolution_s = $5::int
       AND f.start >= u.start AND f.start < u.start + interval '25 hours' AND date_trunc('day', f.start, $6) = u.start)`
 
 const dayBounds = `SELECT date_trunc('day', $1::timestamptz, $4) AS day_from,
