@@ -23,6 +23,8 @@ export type CoupledFit = {
   share: number
   shareSd: number
   regression: number
+  /** see RateEstimate */
+  misfit: number
 }
 
 /** The neighbour's excess at an instant, linear between its readings; null outside them. */
@@ -117,6 +119,7 @@ export function fitCoupled(
     share,
     shareSd: Math.sqrt(at(2, 2) * scale.variance),
     regression,
+    misfit: scale.variance,
   }
 }
 

@@ -101,7 +101,7 @@ function suspicionOf({ room, people, entry, demandRoom, floorsAgree, lonely, mil
   const doubts: Reason[] = []
   const refusals: Reason[] = []
   if (room.air === 'recirculating') doubts.push('recirculation-possible')
-  if (mild) doubts.push('rate-changing')
+  if (mild && !entry.coupled) doubts.push('rate-changing')
   if (lonely) doubts.push('start-too-low')
   if (demandRoom && !entry.demand) doubts.push('demand-controlled')
   const unsure = entry.coupled ? entry.coupled.shareSd > SURE_SHARE : room.neighbour !== undefined

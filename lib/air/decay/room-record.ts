@@ -180,8 +180,8 @@ function readCoupled(
       ratePerHour: first.ratePerHour,
     })
     if (!joint) return own
-    const { ratePerHour, lowPerHour, highPerHour } = joint
-    const estimate = { ...own.estimate, ratePerHour, lowPerHour, highPerHour }
+    const { ratePerHour, lowPerHour, highPerHour, misfit } = joint
+    const estimate = { ...own.estimate, ratePerHour, lowPerHour, highPerHour, misfit }
     return { ...own, piece: { ...own.piece, ratePerHour }, estimate, demand: null, coupled: joint }
   })
   return {
