@@ -2,7 +2,7 @@ import type { Database } from '../client'
 
 export type Heartbeat = {
   id: string
-  kind: 'broker' | 'ingest' | 'jobs' | 'web' | 'demo'
+  kind: 'broker' | 'ingest' | 'feeds' | 'jobs' | 'web' | 'demo'
   startedAt: Date
   at: Date
   info: Record<string, unknown>

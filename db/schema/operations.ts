@@ -6,7 +6,7 @@ import { users } from './people'
 /** Every process that works in the background says here that it lives. */
 export const workerHeartbeats = pgTable('worker_heartbeats', {
   id: text('id').primaryKey(),
-  kind: text('kind', { enum: ['broker', 'ingest', 'jobs', 'web', 'demo'] }).notNull(),
+  kind: text('kind', { enum: ['broker', 'ingest', 'feeds', 'jobs', 'web', 'demo'] }).notNull(),
   startedAt: instant('started_at').notNull(),
   at: instant('at').notNull(),
   info: jsonb('info').notNull().default({}),

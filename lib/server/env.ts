@@ -42,6 +42,10 @@ const schema = z.object({
   MAIL_FROM: z.string().default('Ebbmark <digest@ebbmark.example>'),
   PUBLIC_URL: z.string().url().optional(),
   NEXTAUTH_SECRET: z.string().min(32).optional(),
+  EBBMARK_SECRET_KEY: z
+    .string()
+    .regex(/^[0-9a-fA-F]{64}$/, 'expected 64 hexadecimal digits (openssl rand -hex 32)')
+    .optional(),
   EBBMARK_DEMO: flag,
   EBBMARK_READINGS_KEPT_DAYS: keptDays,
   EBBMARK_ROLLUPS_KEPT_DAYS: keptDays,

@@ -20,6 +20,7 @@ const table: { folder: string; local: RegExp; never: RegExp }[] = [
   })),
   { folder: 'db', local: /^(db|lib\/(?!server))/, never: /^(next|react|aedes|mqtt)/ },
   { folder: 'lib/server', local: /^(db|lib)\//, never: /^(next(?!-auth)|aedes|mqtt)/ },
+  { folder: 'lib/server/mqtt', local: /^lib\//, never: /^(next|aedes|mqtt$)/ },
   { folder: 'lib/server/http', local: /^(db|lib)\//, never: /^(aedes|mqtt)/ },
   {
     folder: 'components',
