@@ -193,6 +193,7 @@ async function startChildren(env) {
   /** @type {import('./stack/children.mjs').Spec[]} */
   const specs = [
     ...ingestSpecs(),
+    { name: 'feeds', args: ['ingest/feeds/main.ts'], typescript: true, reportsReady: true },
     { name: 'jobs', args: ['ingest/nightly/main.ts'], typescript: true, reportsReady: true },
     { name: 'web', args: web },
   ]
@@ -276,12 +277,12 @@ function greet(env) {
   process.stdout.write(`Ebbmark is ready at ${env.PUBLIC_URL}\n`)
 }
 
-/** Ends everything in order: sensors, web, jobs, broker or workers, mailbox, PostgreSQL. @param {() => void} release @param {string} signal */
+/** Ends everything in order: sensors, web, jobs, broker or workers with feeds, mailbox, PostgreSQL. @param {() => void} release @param {string} signal */
 async function stop(release, signal) {
   if (state.stopping) return
   state.stopping = true
   say(`${signal}: stopping`)
-  const order = [['demo'], ['web'], ['jobs'], ['broker', ...workerNames()], ['mailbox']]
+  const order = [['demo'], ['web'], ['jobs'], ['broker', 'feeds', ...workerNames()], ['mailbox']]
   for (const names of order) {
     const children = state.children.filter((child) => names.includes(child.spec.name))
     await Promise.all(children.map((child) => child.stop()))
