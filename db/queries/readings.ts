@@ -1,7 +1,7 @@
 import { sql } from 'drizzle-orm'
 import type { ChartPoint, RoomSeries } from '@/lib/wire/rooms'
 import type { Tx } from '../client'
-import { FINEST_ROLLUP_S, type RollupResolution, rolledTo, sourceOf, wholeStretches } from './rollups'
+import { FINEST_ROLLUP_S, type RollupResolution, rollupState, sourceOf, wholeStretches } from './rollups'
 
 type Bucket = { n: number; lo: number; hi: number; lo_at: number; hi_at: number }
 
@@ -34,9 +34,9 @@ export async function readRoomSeries(
   { roomId, buildingId, fromS, toS, points }: Span & { roomId: number; buildingId: number; points: number },
 ): Promise<RoomSeries> {
   const stretches = Math.max(1, Math.floor(points / 2))
-  const rolledToS = await rolledTo(tx, { buildingId })
+  const state = await rollupState(tx, { buildingId })
   const read = (which: ReturnType<typeof sql>, within: Span, parts: number, finest?: number) => {
-    const source = sourceOf({ which, ...within, stretchS: finest ?? (toS - fromS) / parts, rolledToS })
+    const source = sourceOf({ which, ...within, stretchS: finest ?? (toS - fromS) / parts, ...state })
     return { source, bucket: sql`width_bucket(t, ${fromS}::float8, ${toS}::float8, ${parts}::int)` }
   }
   const room = sql`v.room_id = ${roomId} AND v.lead`
@@ -104,7 +104,7 @@ export async function listReadingMeans(
   span: Span & { roomId: number; buildingId: number; resolutionS: RollupResolution; timeZone: string },
 ): Promise<ReadingMean[]> {
   const { roomId, buildingId, fromS, toS, resolutionS, timeZone } = span
-  const rolledToS = await rolledTo(tx, { buildingId })
+  const { rolledToS } = await rollupState(tx, { buildingId })
   const start =
     resolutionS === 86_400
       ? sql`date_trunc('day', v.at, ${timeZone})`

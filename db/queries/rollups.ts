@@ -10,12 +10,16 @@ const LINE_RESOLUTIONS_S = [3600, 900, 300] as const
 
 type Span = { fromS: number; toS: number }
 
-/** Epoch seconds up to which a building's readings are rolled up; −Infinity where they are not at all or the building is not in scope. */
-export async function rolledTo(tx: Tx, { buildingId }: { buildingId: number }): Promise<number> {
-  const { rows } = await tx.execute<{ s: number }>(
-    sql`SELECT extract(epoch from rolled_to)::float8 AS s FROM rollup_progress WHERE building_id = ${buildingId}`,
-  )
-  return rows[0]?.s ?? Number.NEGATIVE_INFINITY
+/** `rolledToS`: epoch seconds up to which a building's readings are rolled up, −Infinity where they are not or it is not in scope. */
+export type RollupState = { rolledToS: number; hasOffsets: boolean }
+
+/** How far a building's roll-ups reach, and whether any of its sensors has a correction at all: most have none, and a join less is much faster. */
+export async function rollupState(tx: Tx, { buildingId }: { buildingId: number }): Promise<RollupState> {
+  const { rows } = await tx.execute<{ s: number | null; corrected: boolean }>(sql`
+    SELECT (SELECT extract(epoch from rolled_to)::float8 FROM rollup_progress WHERE building_id = ${buildingId}) AS s,
+      EXISTS (SELECT FROM sensor_offsets o JOIN sensors s ON s.id = o.sensor_id WHERE s.building_id = ${buildingId}) AS corrected`)
+  const row = rows[0]
+  return { rolledToS: row?.s ?? Number.NEGATIVE_INFINITY, hasOffsets: row?.corrected ?? true }
 }
 
 /** The coarsest roll-up, seconds, that a stretch of a chart holds whole; null where only readings are fine enough. */
@@ -46,9 +50,15 @@ export async function wholeStretches(
   return last > first ? [first, last] : [toS, toS]
 }
 
-/** Corrections of fresh-air checks, each until the next. */
-const offsets = sql.raw(`(SELECT sensor_id AS offset_sensor_id, offset_ppm, from_at,
-  lead(from_at) OVER (PARTITION BY sensor_id ORDER BY from_at) AS until FROM sensor_offsets)`)
+/** Joins the correction that holds at `instant` as o, or a correction of nothing. Each holds until the next. */
+const offsetAt = (instant: string, hasOffsets: boolean) =>
+  sql.raw(
+    hasOffsets
+      ? `LEFT JOIN (SELECT sensor_id AS offset_sensor_id, offset_ppm, from_at,
+           lead(from_at) OVER (PARTITION BY sensor_id ORDER BY from_at) AS until FROM sensor_offsets) o
+         ON o.offset_sensor_id = v.sensor_id AND ${instant} >= o.from_at AND (o.until IS NULL OR ${instant} < o.until)`
+      : 'CROSS JOIN (SELECT 0::float8 AS offset_ppm) o',
+  )
 
 /**
  * What a chart's line is drawn from, to stand behind FROM: t (epoch seconds), lo, mid, hi (ppm, corrected by the fresh-air check that holds
@@ -61,14 +71,15 @@ export function sourceOf({
   toS,
   stretchS,
   rolledToS,
-}: Span & { which: SQL; stretchS: number; rolledToS: number }): SQL {
+  hasOffsets,
+}: Span & RollupState & { which: SQL; stretchS: number }): SQL {
   const resolutionS = resolutionFor(stretchS)
   const [wholeFromS, wholeToS] =
     resolutionS === null ? [toS, toS] : covered({ fromS, toS }, resolutionS, rolledToS)
   const readings = (from: number, to: number) => sql`
     SELECT extract(epoch from v.at)::float8 AS t, c AS lo, c AS mid, c AS hi, 1 AS n, 0::float8 AS apart_s
     FROM visible_readings v
-    LEFT JOIN ${offsets} o ON o.offset_sensor_id = v.sensor_id AND v.at >= o.from_at AND (o.until IS NULL OR v.at < o.until)
+    ${offsetAt('v.at', hasOffsets)}
     CROSS JOIN LATERAL (SELECT (v.co2_ppm + coalesce(o.offset_ppm, 0))::float8 AS c) AS corrected
     WHERE ${which} AND v.at >= to_timestamp(${from}) AND v.at < to_timestamp(${to})`
   if (resolutionS === null || wholeToS <= wholeFromS) return sql`(${readings(fromS, toS)}) AS points`
@@ -76,7 +87,7 @@ export function sourceOf({
     SELECT extract(epoch from v.start)::float8 + v.resolution_s / 2.0::float8 AS t, v.lowest_ppm + f AS lo, v.mean_ppm + f AS mid, v.highest_ppm + f AS hi, v.count AS n,
       v.resolution_s / 4.0::float8 AS apart_s
     FROM visible_rollups v
-    LEFT JOIN ${offsets} o ON o.offset_sensor_id = v.sensor_id AND v.start >= o.from_at AND (o.until IS NULL OR v.start < o.until)
+    ${offsetAt('v.start', hasOffsets)}
     CROSS JOIN LATERAL (SELECT coalesce(o.offset_ppm, 0)::float8 AS f) AS correction
     WHERE ${which} AND v.resolution_s = ${resolutionS} AND v.start >= to_timestamp(${wholeFromS}) AND v.start < to_timestamp(${wholeToS})`
   return sql`(${rollups} UNION ALL ${readings(fromS, wholeFromS)} UNION ALL ${readings(wholeToS, toS)}) AS points`

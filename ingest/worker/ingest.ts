@@ -35,6 +35,9 @@ export type IngestCounters = {
   queuedRows: number
   lastCommitMs: number | null
   lastBatchTookMs: number | null
+  /** rows of the last batch, and the time that all batches took: with `batches` and `readings` their means */
+  lastBatchRows: number | null
+  commitMs: number
   storeAway: boolean
 }
 
@@ -53,6 +56,8 @@ export class Ingest {
     queuedRows: 0,
     lastCommitMs: null,
     lastBatchTookMs: null,
+    lastBatchRows: null,
+    commitMs: 0,
     storeAway: false,
   }
   readonly #options: Required<IngestOptions>
@@ -134,7 +139,7 @@ export class Ingest {
         this.#closeStore(batch)
         return
       }
-      this.#count(stored, batch.length)
+      this.#count(stored, batch)
       for (const message of batch) message.settle('committed')
       this.#live.touch(stored.buildings)
     }
@@ -158,7 +163,9 @@ export class Ingest {
       try {
         const stored = await within(storeMessages(this.#options.database, batch, noted, attempt), leftMs())
         if (stored) {
-          this.counters.lastBatchTookMs = Math.round(performance.now() - startedMs)
+          const tookMs = Math.round(performance.now() - startedMs)
+          this.counters.lastBatchTookMs = tookMs
+          this.counters.commitMs += tookMs
           return stored
         }
         this.#options.log.warn('the database has not answered in time')
@@ -173,8 +180,9 @@ export class Ingest {
     return undefined
   }
 
-  #count(stored: Stored, messages: number): void {
-    this.counters.batches += messages > 0 ? 1 : 0
+  #count(stored: Stored, batch: readonly Message[]): void {
+    this.counters.batches += batch.length > 0 ? 1 : 0
+    this.counters.lastBatchRows = batch.reduce((sum, message) => sum + weightOf(message), 0)
     this.counters.readings += stored.readings
     this.counters.supply += stored.supply
     this.counters.refusals += stored.refusals

@@ -7,6 +7,7 @@ import {
 import { addDays, localClock, localDate, localToEpochS } from '@/lib/time'
 import { systemClock } from './clock'
 import { database } from './database'
+import { diskSays, readDisk } from './disk'
 import { log } from './log'
 
 /** The broker says that it lives every few seconds; after this long without a word it is not well. */
@@ -17,12 +18,13 @@ export const NIGHT_DUE_LOCAL = '05:00'
 
 const DATABASE_TIMEOUT_MS = 3000
 
-type Part = { well: boolean; says: string }
+/** `tight`: well still, but not for long. */
+type Part = { well: boolean; says: string; state?: 'tight' }
 
 export type Health = {
   well: boolean
   at: string
-  parts: { database: Part; broker: Part; lastNight: Part }
+  parts: { database: Part; broker: Part; lastNight: Part; disk: Part }
   /** ISO 8601, null when no reading was ever stored or the database does not answer */
   lastReadingStoredAt: string | null
 }
@@ -30,7 +32,7 @@ export type Health = {
 /** How the deployment is: nothing in it is secret, and nothing names a building or a person. */
 export async function currentHealth(): Promise<Health> {
   const now = systemClock.now()
-  if (!(await database().answers(DATABASE_TIMEOUT_MS))) return withoutDatabase(now)
+  if (!(await database().answers(DATABASE_TIMEOUT_MS))) return withoutDatabase(now, await diskPart())
   try {
     const [heartbeat, lastReading, nights] = await database().asSystem('health', async (tx) => [
       await getBrokerHeartbeat(tx),
@@ -41,6 +43,7 @@ export async function currentHealth(): Promise<Health> {
       database: { well: true, says: 'answers' },
       broker: brokerPart(heartbeat, now),
       lastNight: nightPart(nights, now),
+      disk: await diskPart(),
     }
     return {
       well: Object.values(parts).every((part) => part.well),
@@ -50,11 +53,11 @@ export async function currentHealth(): Promise<Health> {
     }
   } catch (error) {
     log().error({ err: error }, 'health could not be read')
-    return withoutDatabase(now)
+    return withoutDatabase(now, await diskPart())
   }
 }
 
-function withoutDatabase(now: Date): Health {
+function withoutDatabase(now: Date, disk: Part): Health {
   const unknown = { well: false, says: 'not known while the database does not answer' }
   return {
     well: false,
@@ -63,9 +66,17 @@ function withoutDatabase(now: Date): Health {
       database: { well: false, says: `does not answer within ${DATABASE_TIMEOUT_MS / 1000} s` },
       broker: unknown,
       lastNight: unknown,
+      disk,
     },
     lastReadingStoredAt: null,
   }
+}
+
+async function diskPart(): Promise<Part> {
+  const disk = await readDisk()
+  if (!disk) return { well: true, says: 'not on this machine' }
+  const part = { well: disk.state !== 'full', says: diskSays(disk) }
+  return disk.state === 'tight' ? { ...part, state: 'tight' } : part
 }
 
 function brokerPart(heartbeat: Date | null, now: Date): Part {

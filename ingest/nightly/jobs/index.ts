@@ -8,6 +8,7 @@ import { retainJob } from './retain'
 import { rollUpJob } from './roll-up'
 import { sendDigestJob } from './send-digest'
 import { tickJob } from './tick'
+import { watchDiskJob } from './watch-disk'
 import { watchSensorsJob } from './watch-sensors'
 import { writeDigestsJob } from './write-digests'
 
@@ -22,4 +23,11 @@ export const queuedJobs = [
 ] as const
 
 /** Jobs that the schedule starts. */
-export const scheduledJobs: readonly ScheduledJob[] = [tickJob, rollUpJob, retainJob, makeMonthsJob, pruneJob]
+export const scheduledJobs: readonly ScheduledJob[] = [
+  tickJob,
+  rollUpJob,
+  retainJob,
+  makeMonthsJob,
+  pruneJob,
+  watchDiskJob,
+]

@@ -42,6 +42,7 @@ export const EXPECTED_ROUTES: Record<string, Holders> = {
   'GET /api/auth/[...nextauth]': 'open',
   'POST /api/auth/[...nextauth]': 'open',
   'GET /api/health': 'open',
+  'GET /api/metrics': 'open',
   'GET /api/v1/air-change': rates,
   'GET /api/v1/buildings': rooms,
   'GET /api/v1/decays': rates,
