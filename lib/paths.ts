@@ -18,6 +18,9 @@ export const paths = {
   digests: () => '/digests',
   digest: (digest: string) => `/digests/${part(digest)}`,
   mailbox: () => '/mailbox',
+  feeds: () => '/settings/feeds',
+  newFeed: () => '/settings/feeds/new',
+  feed: (feed: string) => `/settings/feeds/${part(feed)}`,
   api: {
     health: () => '/api/health',
     live: () => '/api/v1/live',

@@ -40,6 +40,7 @@ const entries: readonly Entry[] = [
     permission: 'sensor.register',
     for: ['installer'],
   },
+  { href: paths.feeds(), word: 'Feeds', permission: 'settings.manage', for: ['administrator'] },
 ]
 
 /** What the masthead shows to someone with these roles: only what they may use. */

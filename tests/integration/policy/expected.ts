@@ -16,6 +16,7 @@ const reviewing: Holders = ['engineer']
 const digests: Holders = ['administrator', 'operator', 'tenant']
 const sending: Holders = ['administrator', 'operator']
 const mailbox: Holders = ['administrator', 'operator']
+const settings: Holders = ['administrator']
 
 /** Programs with an API key alone: no person's session counts, so every person is told 401. */
 const programs: Holders = 'api-key'
@@ -36,6 +37,9 @@ export const EXPECTED_PAGES: Record<string, Holders> = {
   '/digests': digests,
   '/digests/[digest]': digests,
   '/mailbox': mailbox,
+  '/settings/feeds': settings,
+  '/settings/feeds/new': settings,
+  '/settings/feeds/[feed]': settings,
 }
 
 export const EXPECTED_ROUTES: Record<string, Holders> = {
@@ -65,6 +69,10 @@ export const EXPECTED_ACTIONS: Record<string, { holders: Holders; answers: boole
   '(signed-in)/person-actions.ts#chooseBuilding': { holders: everyone, answers: false },
   '(signed-in)/decays/actions.ts#reviewDecayAction': { holders: reviewing, answers: true },
   '(signed-in)/digests/actions.ts#sendDigestAction': { holders: sending, answers: true },
+  '(signed-in)/settings/feeds/actions.ts#saveFeedAction': { holders: settings, answers: true },
+  '(signed-in)/settings/feeds/actions.ts#tryNewFeedAction': { holders: settings, answers: true },
+  '(signed-in)/settings/feeds/actions.ts#tryFeedAction': { holders: settings, answers: true },
+  '(signed-in)/settings/feeds/actions.ts#switchFeedAction': { holders: settings, answers: true },
   '(signed-in)/sensors/actions.ts#registerSensorAction': { holders: registering, answers: true },
   '(signed-in)/sensors/actions.ts#renewSecretAction': { holders: registering, answers: true },
   '(signed-in)/sensors/actions.ts#retireSensorAction': { holders: registering, answers: true },

@@ -4,6 +4,7 @@ import { ROLES, type Role } from '@/lib/policy/roles'
 import { actionsOfApp, type BuiltAction, builtActions, pagesOfApp, routesOfApp } from '../../support/app-tree'
 import { createTestDatabase, type TestDatabase } from '../../support/database'
 import { makeSmallOrganization, SMALL_PASSWORD, type SmallOrganization } from '../../support/small-building'
+import { addSmallFeed } from '../../support/small-feed'
 import { addSmallResults, type SmallResults } from '../../support/small-results'
 import { signInOverHttp, startWeb, TEST_WEB_DIST, type TestWeb } from '../../support/web'
 import { EXPECTED_ACTIONS, EXPECTED_PAGES, EXPECTED_ROUTES, type Holders } from './expected'
@@ -21,6 +22,7 @@ let mill: SmallOrganization
 let other: SmallOrganization
 let results: SmallResults
 let built: BuiltAction[]
+let feedId: string
 const cookies = new Map<Caller, string>([['nobody', '']])
 
 beforeAll(async () => {
@@ -28,6 +30,7 @@ beforeAll(async () => {
   mill = await makeSmallOrganization(db.database, 'mill')
   other = await makeSmallOrganization(db.database, 'other')
   results = await addSmallResults(db.database, mill)
+  feedId = await addSmallFeed(db.database, mill)
   web = await startWeb({ databaseUrl: db.appUrl, env: { EBBMARK_DEMO: '1' } })
   built = builtActions(TEST_WEB_DIST)
   for (const role of ROLES) {
@@ -48,6 +51,7 @@ const filled = (pattern: string): string =>
     .replace('[sensor]', mill.rooms.hall.deviceId)
     .replace('[decay]', results.decayPublicId)
     .replace('[digest]', results.digestPublicId)
+    .replace('[feed]', feedId)
     .replace('[...nextauth]', 'csrf')
 
 const call = async (caller: Caller, path: string, init: RequestInit = {}) => {
@@ -216,6 +220,14 @@ describe('what is not theirs looks as if it were not there:', () => {
     for (const role of ['administrator', 'operator', 'engineer', 'installer'] as const) {
       expect((await call(role, `/sensors/${other.rooms.hall.deviceId}`)).status, role).toBe(404)
     }
+  })
+
+  test('a feed, to another organisation’s administrator', async () => {
+    const email = other.people.administrator
+    const { jar } = await signInOverHttp(web, { email, password: SMALL_PASSWORD })
+    const ask = (path: string) => fetch(`${web.url}${path}`, { headers: { Cookie: jar.header } })
+    expect((await ask(`/settings/feeds/${feedId}`)).status).toBe(404)
+    expect(await (await ask('/settings/feeds')).text()).not.toContain(feedId)
   })
 
   test('lists name nothing of another organisation, nor rooms a tenant does not hold', async () => {
