@@ -42,9 +42,8 @@ export default async function setup(project: TestProject): Promise<() => Promise
   }
   await finished(run('ingest/setup/main.ts', env), 'the set-up')
   const web = await startWeb({ databaseUrl: test.appUrl, env })
-  const children = ['ingest/mailbox/main.ts', 'ingest/broker/main.ts', 'ingest/nightly/main.ts'].map((main) =>
-    run(main, { ...env, PUBLIC_URL: web.url }),
-  )
+  const mains = ['mailbox', 'broker', 'feeds', 'nightly'].map((name) => `ingest/${name}/main.ts`)
+  const children = mains.map((main) => run(main, { ...env, PUBLIC_URL: web.url }))
   await Promise.all(children.map(isReady))
   const sensors = run('ingest/simulator/live.ts', env)
   await isReady(sensors)
