@@ -46,7 +46,7 @@ function run(command: string, args: readonly string[], env: Record<string, strin
     // an environment of its own, so that no PG… variable of the caller leads it elsewhere
     const child = spawn(command, args, {
       stdio: ['ignore', 'ignore', 'pipe'],
-      env: { PATH: '/usr/local/bin:/usr/bin:/bin', LC_ALL: 'C.UTF-8', ...env } as NodeJS.ProcessEnv,
+      env: { NODE_ENV: 'production', PATH: '/usr/local/bin:/usr/bin:/bin', LC_ALL: 'C.UTF-8', ...env },
     })
     let said = ''
     child.stderr.on('data', (chunk) => (said = `${said}${chunk}`.slice(-4000)))
