@@ -1,5 +1,8 @@
 import { afterAll, afterEach, beforeAll, describe, expect, it } from 'vitest'
+import { openDatabase } from '@/db/client'
+import { migrateDatabase } from '@/db/migrate'
 import { makeSite, rows, type TestSensor } from '@/tests/support/broker'
+import { startThrowAwayCluster } from '@/tests/support/cluster'
 import { createTestDatabase, type TestDatabase } from '@/tests/support/database'
 import { type Mosquitto, startMosquitto } from '@/tests/support/mosquitto'
 import { co2PpmOf, finishPublishers, type Publisher, startPublishers } from '@/tests/support/publishers'
@@ -32,17 +35,17 @@ afterEach(async () => {
 })
 afterAll(() => db?.drop())
 
-async function startIngest(count: number): Promise<void> {
+async function startIngest(count: number, appUrl = db.appUrl): Promise<void> {
   broker = await startMosquitto({ persistence: true })
   workersWanted = true
   workers = []
-  for (let index = 0; index < count; index++) await launch(index, count)
+  for (let index = 0; index < count; index++) await launch(index, count, appUrl)
 }
 
 /** Starts a worker, and again whenever it ends, as the stack does. */
-async function launch(index: number, count: number): Promise<void> {
+async function launch(index: number, count: number, appUrl: string): Promise<void> {
   const started = await startIngestMain('ingest/worker/main.ts', {
-    DATABASE_URL: db.appUrl,
+    DATABASE_URL: appUrl,
     MQTT_URL: `mqtt://127.0.0.1:${broker.port}`,
     INGEST_WORKER: String(index + 1),
     INGEST_WORKERS: String(count),
@@ -50,12 +53,12 @@ async function launch(index: number, count: number): Promise<void> {
   workers[index] = started
   void started.ended.then(async (how) => {
     if (how !== 'SIGKILL' && how !== 0) ownEnds.push(`${how}: ${started.output().slice(-2000)}`)
-    if (workersWanted) await launch(index, count)
+    if (workersWanted) await launch(index, count, appUrl)
   })
 }
 
-async function start(name: string): Promise<Publisher[]> {
-  const site = await makeSite(db.database, name)
+async function start(name: string, database = db.database): Promise<Publisher[]> {
+  const site = await makeSite(database, name)
   const sensors: TestSensor[] = []
   for (let index = 0; index < publisherCount; index++) sensors.push(await site.addSensor(`${name}-${index}`))
   const baseMs = Math.floor(Date.now() / 1000) * 1000 - 86_400_000
@@ -74,10 +77,10 @@ async function start(name: string): Promise<Publisher[]> {
 
 type Stored = Map<number, Map<number, number>>
 
-async function storedOf(publishers: readonly Publisher[]): Promise<Stored> {
+async function storedOf(publishers: readonly Publisher[], database = db.database): Promise<Stored> {
   const stored: Stored = new Map(publishers.map(({ sensor }) => [sensor.id, new Map()]))
   const found = await rows<{ sensor_id: number; i: number; co2_ppm: number }>(
-    db.database,
+    database,
     'SELECT sensor_id, co2_ppm, (extract(epoch FROM at) - $1)::float8 AS i FROM readings WHERE sensor_id = ANY($2)',
     [publishers[0]!.baseMs / 1000, publishers.map(({ sensor }) => sensor.id)],
   )
@@ -99,10 +102,14 @@ const acknowledgedBy = (publishers: readonly Publisher[]) =>
   publishers.reduce((sum, { acknowledged }) => sum + acknowledged.size, 0)
 
 /** Waits until nothing more comes that could fill what is missing. */
-async function settled(publishers: readonly Publisher[], excepted: Set<string>): Promise<string[]> {
+async function settled(
+  publishers: readonly Publisher[],
+  excepted: Set<string>,
+  database = db.database,
+): Promise<string[]> {
   let missing: string[] = []
   for (let tries = 0; tries < 120; tries++) {
-    missing = missingOf(publishers, await storedOf(publishers), excepted)
+    missing = missingOf(publishers, await storedOf(publishers, database), excepted)
     if (missing.length === 0) return missing
     await pause(500)
   }
@@ -110,8 +117,8 @@ async function settled(publishers: readonly Publisher[], excepted: Set<string>):
   return missing
 }
 
-async function expectGoodOrder(): Promise<void> {
-  expect(await rows(db.database, 'SELECT source, reason, detail FROM refused_messages')).toEqual([])
+async function expectGoodOrder(database = db.database): Promise<void> {
+  expect(await rows(database, 'SELECT source, reason, detail FROM refused_messages')).toEqual([])
   expect(ownEnds).toEqual([])
 }
 
@@ -171,6 +178,40 @@ describe('beside an outside broker under load', () => {
       )
       expect(excepted.size).toBeLessThan(acknowledgedBy(publishers))
       await expectGoodOrder()
+    },
+    limitMs,
+  )
+
+  it(
+    'PostgreSQL stopped and started again: the worker gives its messages back, the broker keeps them, all is stored',
+    async () => {
+      const cluster = await startThrowAwayCluster()
+      const appUrl = `postgres://ebbmark_app@127.0.0.1:${cluster.port}/ebbmark`
+      await migrateDatabase(`postgres://ebbmark_owner@127.0.0.1:${cluster.port}/ebbmark`, new Date())
+      const database = openDatabase({ url: appUrl, poolSize: 2 })
+      try {
+        await startIngest(2, appUrl)
+        const publishers = await start('penstock', database)
+        await pause(1000)
+        await cluster.stop()
+        await pause(8000)
+        const before = acknowledgedBy(publishers)
+        expect(workers.map((worker) => worker.output()).join()).toContain('the database takes no readings')
+        await pause(1000)
+        // the broker goes on taking what the sensors send
+        expect(acknowledgedBy(publishers)).toBeGreaterThan(before)
+        await cluster.restart()
+        await pause(2000)
+        await finishPublishers(publishers, 60_000)
+        expect(await settled(publishers, new Set(), database)).toEqual([])
+        expect(workers.map((worker) => worker.output()).join()).toContain('the database takes readings again')
+        await expectGoodOrder(database)
+      } finally {
+        workersWanted = false
+        for (const worker of workers) await worker.end('SIGTERM')
+        await database.close()
+        await cluster.remove()
+      }
     },
     limitMs,
   )
