@@ -45,7 +45,11 @@ async function main(): Promise<void> {
     process.exit(1)
   })
   // what fell due while no runner ran need not wait for the next ten minutes
-  await tick({ database: database(), clock: systemClock })
+  await tick({
+    database: database(),
+    clock: systemClock,
+    readingsKeptDays: env().EBBMARK_READINGS_KEPT_DAYS ?? null,
+  })
   log().info({ worker: runner.workerId }, 'the job runner is ready')
   process.send?.({ ready: true })
 }

@@ -31,7 +31,13 @@ export async function spaceOf(client: pg.Client): Promise<Space> {
   }
 }
 
-const MONTH = 'readings_2026_10'
+/** The month with the most readings. */
+const largestMonth = async (client: pg.Client): Promise<string> =>
+  (
+    await client.query<{ name: string }>(
+      `SELECT inhrelid::regclass::text AS name FROM pg_inherits WHERE inhparent = 'readings'::regclass ORDER BY pg_table_size(inhrelid) DESC LIMIT 1`,
+    )
+  ).rows[0]!.name
 
 /** Other ways to lay out the same month, in the order of arrival, each with the index that it needs. */
 const others: readonly { name: string; columns: string; values: string; index: string }[] = [
@@ -66,7 +72,8 @@ const others: readonly { name: string; columns: string; values: string; index: s
 
 /** Bytes per reading of a month in each layout. */
 export async function layouts(client: pg.Client): Promise<Shape[]> {
-  const rows = await number(client, `SELECT count(*) AS v FROM ${MONTH}`)
+  const month = await largestMonth(client)
+  const rows = await number(client, `SELECT count(*) AS v FROM ${month}`)
   const shapes: Shape[] = []
   const measure = async (name: string, table: string) =>
     shapes.push({
@@ -76,30 +83,31 @@ export async function layouts(client: pg.Client): Promise<Shape[]> {
     })
   for (const { name, columns, values, index } of others) {
     await client.query(`CREATE TABLE shape (${columns}, ${index})`)
-    await client.query(`INSERT INTO shape SELECT ${values} FROM ${MONTH} ORDER BY at, sensor_id`)
+    await client.query(`INSERT INTO shape SELECT ${values} FROM ${month} ORDER BY at, sensor_id`)
     await measure(name, 'shape')
     await client.query('DROP TABLE shape')
   }
-  await client.query(`CREATE TABLE shape (LIKE ${MONTH})`)
-  await client.query(`INSERT INTO shape SELECT * FROM ${MONTH} ORDER BY at, sensor_id`)
+  await client.query(`CREATE TABLE shape (LIKE ${month})`)
+  await client.query(`INSERT INTO shape SELECT * FROM ${month} ORDER BY at, sensor_id`)
   await client.query('CREATE INDEX ON shape USING brin (at)')
   await measure('as it is, BRIN on the instant in place of the key', 'shape')
   await client.query('DROP TABLE shape')
-  await client.query(`REINDEX TABLE ${MONTH}`)
-  await measure('as it is, the key of a closed month rebuilt', MONTH)
+  await client.query(`REINDEX TABLE ${month}`)
+  await measure('as it is, the key of a closed month rebuilt', month)
   return shapes
 }
 
 /** Bytes per reading of the month as compressed CSV. */
 export async function archivedBytes(client: pg.Client): Promise<number> {
-  const rows = await number(client, `SELECT count(*) AS v FROM ${MONTH}`)
+  const month = await largestMonth(client)
+  const rows = await number(client, `SELECT count(*) AS v FROM ${month}`)
   const gzip = createGzip()
   let bytes = 0
   gzip.on('data', (chunk: Buffer) => {
     bytes += chunk.length
   })
   const stream = client.query(
-    copyTo(`COPY (SELECT * FROM ${MONTH} ORDER BY sensor_id, at) TO STDOUT WITH (FORMAT csv, HEADER)`),
+    copyTo(`COPY (SELECT * FROM ${month} ORDER BY sensor_id, at) TO STDOUT WITH (FORMAT csv, HEADER)`),
   )
   await new Promise((resolve, reject) => {
     gzip.on('end', resolve)

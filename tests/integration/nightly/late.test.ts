@@ -158,3 +158,22 @@ it('does not run a night again for readings that its run has yet to read', async
   )
   expect(run?.provisional).toBe(true)
 })
+
+it('does not run a night again whose readings are deleted by policy, because a few stragglers came', async () => {
+  const later = { now: () => new Date('2026-05-01T13:00:00Z') }
+  const hour = Date.parse('2026-03-04T17:00:00Z')
+  const repeats = async (readingsKeptDays: number | null) => {
+    await test.database.asSystemRaw('test', (client) =>
+      markLateHours(client, [
+        { buildingId: building.buildingId, atMs: hour, receivedMs: later.now().getTime() - 60_000 },
+      ]),
+    )
+    await tick({ database: test.database, clock: later, readingsKeptDays })
+    expect(await marks()).toEqual([])
+    return (await queuedJobs(test))
+      .filter((job) => job.payload.date === '2026-03-04')
+      .map((job) => job.payload.date)
+  }
+  expect(await repeats(30)).toEqual([])
+  expect(await repeats(null)).toEqual(['2026-03-04'])
+})
