@@ -1,12 +1,18 @@
-import { cpus } from 'node:os'
+import fs from 'node:fs'
+import os, { cpus } from 'node:os'
+import path from 'node:path'
 import pg from 'pg'
-import { type Database, openDatabase } from '@/db/client'
+import { deleteOldReadings } from '@/db/changes/retention'
+import { openDatabase } from '@/db/client'
 import { migrateDatabase } from '@/db/migrate'
 import { readRoomSeries } from '@/db/queries/readings'
+import { listOrganizationsKept } from '@/db/queries/retention'
+import { makeBackup } from '@/ingest/backup/make'
 import { rollUp } from '@/ingest/nightly/roll-up'
 import { startThrowAwayCluster } from '../support/cluster'
-import { makeMeasuredBuilding } from '../support/measured-building'
+import type { MeasuredBuilding } from '../support/measured-building'
 import { options, printTable, wholeNumber, writeReport } from './report'
+import { fillRecord } from './rollups/fill'
 import { archivedBytes, layouts, spaceOf } from './rollups/space'
 import { type Times, timesOf } from './rollups/times'
 
@@ -38,7 +44,7 @@ async function bench(): Promise<void> {
     `${cpus().length} × ${cpus()[0]?.model ?? 'unknown processor'}, Node ${process.version}, PostgreSQL with fsync off.`,
   )
   console.log(`${rooms} rooms, ${days} days of one reading a minute, charts of ${points} points at most.\n`)
-  const building = await fill(database)
+  const building = await fillRecord({ database, owner, rooms, fromS: FROM_S, toS: TO_S })
   const clock = { now: () => new Date(TO_S * 1000) }
   const seconds = async (fn: () => Promise<unknown>) => {
     const from = performance.now()
@@ -52,47 +58,17 @@ async function bench(): Promise<void> {
   const steady = await measureSteady()
   const shapes = await layouts(owner)
   const archive = await archivedBytes(owner)
-  print({ historyS, space, charts, steady, shapes, archive })
+  const keeping = await measureKeeping()
+  print({ historyS, space, charts, steady, shapes, archive, keeping })
   writeReport('rollups', {
     ...{ node: process.version, cores: cpus().length, rooms, days, points },
-    ...{ historyS, space, charts, steady, shapes, archive },
+    ...{ historyS, space, charts, steady, shapes, archive, keeping },
   })
-}
-
-type Building = Awaited<ReturnType<typeof makeMeasuredBuilding>>
-
-/** A year as it would have come in: in order of time, all sensors of a minute together, with every quantity that a sensor sends. */
-async function fill(database: Database): Promise<Building> {
-  const building = await makeMeasuredBuilding(database, {
-    slug: 'bench',
-    timeZone: 'Europe/Lisbon',
-    rooms: Array.from({ length: rooms }, (_, index) => ({
-      ...{ number: `r${index}`, name: `Room ${index}`, volumeM3: 75, rateOnPerHour: 3, rateOffPerHour: 0.4 },
-      designHeadcount: 10,
-    })),
-  })
-  await owner.query(
-    `SELECT ensure_readings_month(m) FROM generate_series(date_trunc('month', to_timestamp($1), 'UTC'), to_timestamp($2), interval '1 month') m`,
-    [FROM_S, TO_S],
-  )
-  const ids = building.rooms.map((room) => room.sensorId)
-  for (let fromS = FROM_S; fromS < TO_S; fromS += 7 * 86_400) await fillWeek(ids, fromS)
-  return building
-}
-
-function fillWeek(sensorIds: readonly number[], fromS: number) {
-  return owner.query(
-    `INSERT INTO readings (at, received_at, sensor_id, co2_ppm, temp_c, rh_pct, battery_pct, rssi_dbm)
-     SELECT to_timestamp(t), to_timestamp(t + 0.8), s, (430 + 500 * greatest(0, sin(t * 2 * pi() / 86400 + s)) + 9 * random())::int, round((21 + random())::numeric, 1),
-       (35 + 20 * random())::int, 91, -60 - (10 * random())::int
-     FROM generate_series($1::bigint, $2::bigint, 60) AS t, unnest($3::int[]) AS s ON CONFLICT DO NOTHING`,
-    [fromS, Math.min(TO_S, fromS + 7 * 86_400) - 60, sensorIds],
-  )
 }
 
 /** Times of readRoomSeries over the whole record, as the route handler calls it: one room, and all one after the other. */
 async function measureCharts(
-  building: Building,
+  building: MeasuredBuilding,
 ): Promise<{ one: Times; all: Times; raw: Times; most: number }> {
   const { buildingId } = building
   let most = 0
@@ -130,6 +106,32 @@ function measureSteady(): Promise<Times> {
   })
 }
 
+const BATCH_ROWS = 20_000
+
+/** A backup of the whole, and batches of the retention job. */
+async function measureKeeping() {
+  const dataDir = fs.mkdtempSync(path.join(os.tmpdir(), 'ebbmark-bench-'))
+  const out = path.join(dataDir, 'backup.tar')
+  try {
+    const from = performance.now()
+    await makeBackup({ ownerUrl: at('ebbmark_owner'), dataDir, out, now: new Date(TO_S * 1000) })
+    const backupS = (performance.now() - from) / 1000
+    await owner.query('UPDATE organizations SET readings_kept_days = 30')
+    const [own] = await database.asSystem('bench', (tx) => listOrganizationsKept(tx))
+    const batch = {
+      organizationId: own!.id,
+      organizationPublicId: own!.publicId,
+      before: new Date((FROM_S + Math.min(days / 2, 60) * 86_400) * 1000),
+      atMost: BATCH_ROWS,
+    }
+    const remove = () => database.asSystem('bench', (tx) => deleteOldReadings(tx, batch))
+    const deletes = days > 90 ? await timesOf(repeats, remove) : null
+    return { backupS, backupBytes: fs.statSync(out).size, deletes }
+  } finally {
+    fs.rmSync(dataDir, { recursive: true, force: true })
+  }
+}
+
 type Figures = {
   historyS: number
   space: Awaited<ReturnType<typeof spaceOf>>
@@ -137,9 +139,10 @@ type Figures = {
   steady: Times
   shapes: Awaited<ReturnType<typeof layouts>>
   archive: number
+  keeping: Awaited<ReturnType<typeof measureKeeping>>
 }
 
-function print({ historyS, space, charts, steady, shapes, archive }: Figures): void {
+function print({ historyS, space, charts, steady, shapes, archive, keeping }: Figures): void {
   const ms = (times: Times) => [times.medianMs.toFixed(1), times.worstMs.toFixed(1)]
   printTable(
     ['at the server', 'median ms', 'worst ms', 'wanted'],
@@ -152,7 +155,10 @@ function print({ historyS, space, charts, steady, shapes, archive }: Figures): v
   )
   console.log(`\nmost points sent for a room: ${charts.most} (asked for at most ${points})`)
   console.log(
-    `roll-up of the history: ${historyS.toFixed(1)} s, ${Math.round(space.readings / historyS)} readings/s\n`,
+    `roll-up of the history: ${historyS.toFixed(1)} s, ${Math.round(space.readings / historyS)} readings/s`,
+  )
+  console.log(
+    `backup: ${keeping.backupS.toFixed(1)} s, ${(keeping.backupBytes / 1e6).toFixed(0)} MB; ${BATCH_ROWS} readings deleted in ${keeping.deletes?.medianMs.toFixed(0) ?? '–'} ms\n`,
   )
   const bytes = (value: number) => value.toFixed(1)
   printTable(
@@ -166,6 +172,7 @@ function print({ historyS, space, charts, steady, shapes, archive }: Figures): v
         bytes(space.rollupHeap + space.rollupIndex),
       ],
       ['archived month (CSV, gzip)', '', '', bytes(archive)],
+      ['backup with everything', '', '', bytes(keeping.backupBytes / space.readings)],
     ],
   )
   console.log('')

@@ -241,7 +241,7 @@ describe('a chart and means', () => {
         readRoomSeries(tx, { ...place(), fromS, toS, points }),
       )
       const plain = await inside(fromS, toS)
-      expect(series.points.length).toBeLessThanOrEqual(points + 2)
+      expect(series.points.length).toBeLessThanOrEqual(points)
       expect(series.points.length).toBeGreaterThan(points / 2)
       const stretchS = (toS - fromS) / Math.floor(points / 2)
       const highest = plain.reduce((best, each) => (each.c > best.c ? each : best))
