@@ -37,7 +37,7 @@ export class Child {
     const before = ['--import', leash, ...(spec.typescript ? ['--import', 'tsx'] : [])]
     const child = spawn(process.execPath, [...before, ...spec.args], {
       cwd: context.root,
-      env: { ...context.env, ...spec.env },
+      env: { ...context.env, ...spec.env, EBBMARK_LEASH: String(process.pid) },
       stdio: ['ignore', 'pipe', 'pipe', 'ipc'],
       detached: true, // its own group: Ctrl-C reaches it only through the order of stop()
     })
