@@ -58,7 +58,11 @@ export const placements = pgTable(
     fromAt: instant('from_at').notNull(),
     toAt: instant('to_at'),
   },
-  (t) => [index('placements_room').on(t.roomId), index('placements_sensor').on(t.sensorId, t.fromAt)],
+  (t) => [
+    index('placements_room').on(t.roomId),
+    index('placements_sensor').on(t.sensorId, t.fromAt),
+    index('placements_building').on(t.buildingId),
+  ],
 )
 
 /** A correction found by a fresh-air check, ppm added to the reading from `fromAt` on; the raw reading stays. */

@@ -1,0 +1,1 @@
+CREATE INDEX "placements_building" ON "placements" USING btree ("building_id");
