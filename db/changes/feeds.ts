@@ -3,7 +3,7 @@ import type pg from 'pg'
 import { Refusal } from '@/lib/errors'
 import type { FeedMapping } from '@/lib/wire/feed'
 import type { Tx } from '../client'
-import { feeds } from '../schema'
+import { feedCandidates, feeds } from '../schema'
 import { addAuditEvent } from './audit'
 import { notifyLive } from './notice'
 
@@ -67,6 +67,33 @@ export async function switchFeed(
   await notifyLive(tx, 'feeds', [changed.buildingId])
 }
 
+/** Takes a feed away with its candidates; readings that came through it stay. */
+export async function removeFeed(
+  tx: Tx,
+  actor: Actor,
+  { publicId, name }: { publicId: string; name: string },
+): Promise<void> {
+  const [found] = await tx
+    .select({ id: feeds.id, name: feeds.name, buildingId: feeds.buildingId, enabled: feeds.enabled })
+    .from(feeds)
+    .where(eq(feeds.publicId, publicId))
+  if (!found) throw new Refusal('not-found', 'There is no such feed, or it is not yours to change.')
+  if (found.name !== name.trim())
+    throw new Refusal('invalid', 'Type the name of the feed to take it away.', {
+      fields: { name: [`Type ${found.name} to confirm.`] },
+    })
+  await tx.delete(feedCandidates).where(eq(feedCandidates.feedId, found.id))
+  await tx.delete(feeds).where(eq(feeds.id, found.id))
+  await addAuditEvent(tx, {
+    ...actor,
+    action: 'feed.removed',
+    subjectKind: 'feed',
+    subjectId: publicId,
+    detail: { from: { name: found.name, enabled: found.enabled } },
+  })
+  await notifyLive(tx, 'feeds', [found.buildingId])
+}
+
 /** What a runner has counted of a feed since it last wrote. Instants are epoch milliseconds. */
 export type FeedProgress = {
   feedId: number
@@ -92,7 +119,7 @@ export const CANDIDATES_MAX = 500
 /** Adds what a runner counted; candidates beyond the first 500 of a feed are not written down. */
 export async function addFeedProgress(client: pg.ClientBase, progress: FeedProgress): Promise<void> {
   const at = (ms: number | null | undefined) => (ms === null || ms === undefined ? null : new Date(ms))
-  await client.query(
+  const updated = await client.query(
     `UPDATE feeds SET messages = messages + $2, readings = readings + $3, refusals = refusals + $4,
        last_message_at = coalesce($5, last_message_at), connected_at = CASE WHEN $6 THEN $7 ELSE connected_at END,
        last_error = coalesce($8, last_error), last_error_at = coalesce($9, last_error_at) WHERE id = $1`,
@@ -108,7 +135,8 @@ export async function addFeedProgress(client: pg.ClientBase, progress: FeedProgr
       at(progress.error?.atMs),
     ],
   )
-  if (progress.candidates.length === 0) return
+  // the feed may have been taken away meanwhile
+  if (updated.rowCount === 0 || progress.candidates.length === 0) return
   await client.query(
     `INSERT INTO feed_candidates AS c (feed_id, device_id, messages, first_at, last_at, last_co2_ppm)
      SELECT $1, device_id, messages, first_at, last_at, last_co2_ppm

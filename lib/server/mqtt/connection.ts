@@ -124,6 +124,9 @@ export class Connection {
     this.#socket.on('data', (bytes) => {
       this.#lastHeardMs = performance.now()
       parser.parse(bytes)
+      // the parser waits for the whole of a packet, however much that is
+      if ((parser as unknown as { packet: { length: number } }).packet.length > packetMaxBytes)
+        this.#end(new Error(`the broker sent a packet of more than ${packetMaxBytes} bytes`))
     })
     this.#socket.on('error', (error) => this.#end(error))
     this.#socket.on('close', () => this.#end(new Error('the broker closed the connection')))

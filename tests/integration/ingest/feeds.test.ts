@@ -4,7 +4,7 @@ import net from 'node:net'
 import { Aedes } from 'aedes'
 import mqtt, { type IClientOptions, type MqttClient } from 'mqtt'
 import { afterAll, afterEach, beforeAll, describe, expect, it } from 'vitest'
-import { addFeed, switchFeed } from '@/db/changes/feeds'
+import { addFeed, removeFeed, switchFeed } from '@/db/changes/feeds'
 import { newPublicId } from '@/db/public-id'
 import { getFeed, listFeeds } from '@/db/queries/feeds'
 import { scopeOf } from '@/lib/policy/scope'
@@ -231,6 +231,14 @@ describe('a feed', () => {
         (found) => found.length === 1,
       ),
     ).toEqual([{ co2_ppm: 611, temp_c: 21.5 }])
+    // a version 5 broker is told what is too much; this one is left
+    await publish(client, 'plant/b/up', Buffer.alloc(5 * 1024 * 1024, 32))
+    const tooMuch = await eventually(
+      () => seen(feed),
+      (each) => each?.row.lastError?.includes('more than 4194304 bytes') === true,
+      15_000,
+    )
+    expect(tooMuch?.row.lastError).toContain('more than 4194304 bytes')
     await turn(feed, false)
     await eventually(
       () => seen(feed),
@@ -272,7 +280,11 @@ describe('a feed', () => {
         20_000,
       ),
     ).toHaveLength(201)
-    await turn(feed, false)
+    await db.database.asSystem('test', (tx) =>
+      removeFeed(tx, actor(), { publicId: feed, name: `feed ${feed}` }),
+    )
+    expect(await seen(feed)).toBeNull()
+    expect(await storedOf(sensor.id)).toHaveLength(201)
   })
 
   it('is not seen by another organisation, nor by who is bound to a tenancy', async () => {

@@ -69,6 +69,7 @@ export const EXPECTED_ACTIONS: Record<string, { holders: Holders; answers: boole
   '(signed-in)/person-actions.ts#chooseBuilding': { holders: everyone, answers: false },
   '(signed-in)/decays/actions.ts#reviewDecayAction': { holders: reviewing, answers: true },
   '(signed-in)/digests/actions.ts#sendDigestAction': { holders: sending, answers: true },
+  '(signed-in)/settings/feeds/actions.ts#removeFeedAction': { holders: settings, answers: true },
   '(signed-in)/settings/feeds/actions.ts#saveFeedAction': { holders: settings, answers: true },
   '(signed-in)/settings/feeds/actions.ts#tryNewFeedAction': { holders: settings, answers: true },
   '(signed-in)/settings/feeds/actions.ts#tryFeedAction': { holders: settings, answers: true },

@@ -1,11 +1,13 @@
 'use server'
 
+import { redirect } from 'next/navigation'
 import { z } from 'zod'
-import { addFeed, switchFeed } from '@/db/changes/feeds'
+import { addFeed, removeFeed, switchFeed } from '@/db/changes/feeds'
 import { newPublicId } from '@/db/public-id'
 import { getFeedSource } from '@/db/queries/feeds'
 import { Refusal } from '@/lib/errors'
 import { type FeedForm, feedForm, mappingOf } from '@/lib/forms/feed'
+import { paths } from '@/lib/paths'
 import { systemClock } from '@/lib/server/clock'
 import { feedAddress, sealPurpose } from '@/lib/server/feeds/address'
 import { tryFeed } from '@/lib/server/feeds/try'
@@ -120,4 +122,19 @@ const turn = action({
 /** Switches a feed on or off. */
 export async function switchFeedAction(input: unknown) {
   return turn(input)
+}
+
+const remove = action({
+  permission: 'settings.manage',
+  schema: z.object({ id: z.string(), name: z.string() }),
+  run: async (person, { id, name }) => {
+    const { organizationId, userId } = person.scope
+    await person.change((tx) => removeFeed(tx, { organizationId, userId }, { publicId: id, name }))
+    redirect(paths.feeds())
+  },
+})
+
+/** Takes a feed away; what it brought stays. */
+export async function removeFeedAction(earlier: unknown, form: FormData) {
+  return remove(earlier, form)
 }

@@ -4,13 +4,14 @@ import { FeedCandidates, FeedRefusals } from '@/components/feeds/FeedLists'
 import { FeedState } from '@/components/feeds/FeedState'
 import { FeedSwitch } from '@/components/feeds/FeedSwitch'
 import { mappingRows } from '@/components/feeds/mapping-rows'
+import { RemoveFeed } from '@/components/feeds/RemoveFeed'
 import { Crumbs, MarginSection, Page, PageHead, WithMargin } from '@/components/ui/Page'
 import { Pairs } from '@/components/ui/Table'
 import { getFeed } from '@/db/queries/feeds'
 import { paths } from '@/lib/paths'
 import { systemClock } from '@/lib/server/clock'
 import { requirePage } from '@/lib/server/http/page'
-import { switchFeedAction, tryFeedAction } from '../actions'
+import { removeFeedAction, switchFeedAction, tryFeedAction } from '../actions'
 
 export const metadata: Metadata = { title: 'Feed' }
 
@@ -29,20 +30,30 @@ export default async function FeedPage({ params }: { params: Promise<{ feed: str
       <PageHead title={row.name} lead={<FeedState feed={row} nowS={nowS} />} />
       <WithMargin
         margin={
-          <MarginSection title="How it is read">
-            <Pairs
-              rows={[
-                { key: 'broker', name: 'Broker', value: <span className="fig text-2">{row.brokerUrl}</span> },
-                {
-                  key: 'filter',
-                  name: 'Topics',
-                  value: <span className="fig text-2">{row.topicFilter}</span>,
-                },
-                { key: 'building', name: 'Building', value: row.building },
-                ...mappingRows(mapping),
-              ]}
-            />
-          </MarginSection>
+          <>
+            {' '}
+            <MarginSection title="How it is read">
+              <Pairs
+                rows={[
+                  {
+                    key: 'broker',
+                    name: 'Broker',
+                    value: <span className="fig text-2">{row.brokerUrl}</span>,
+                  },
+                  {
+                    key: 'filter',
+                    name: 'Topics',
+                    value: <span className="fig text-2">{row.topicFilter}</span>,
+                  },
+                  { key: 'building', name: 'Building', value: row.building },
+                  ...mappingRows(mapping),
+                ]}
+              />
+            </MarginSection>
+            <MarginSection title="No longer needed?">
+              <RemoveFeed id={row.id} name={row.name} remove={removeFeedAction} />
+            </MarginSection>
+          </>
         }
       >
         <FeedSwitch id={row.id} enabled={row.enabled} turn={switchFeedAction} tryOut={tryFeedAction} />
