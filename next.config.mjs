@@ -16,7 +16,7 @@ const config = {
   // Compression holds server-sent events back.
   compress: false,
   // `npm run check` checks the types of everything; a build must not rewrite tsconfig.json, so it gets one that extends it.
-  typescript: { ignoreBuildErrors: true, tsconfigPath: 'tsconfig.next.json' },
+  typescript: { ignoreBuildErrors: true, tsconfigPath: 'app/tsconfig.json' },
   experimental: { authInterrupts: true },
   serverExternalPackages: [
     '@node-rs/argon2',

@@ -7,7 +7,7 @@ import { digestRoom, heldAllDay } from './room'
 import { capital, inWords, list, people, weekInWords } from './words'
 
 /** Rooms of use by appointment: in these it helps to know how long to leave them empty. */
-const BOOKED = ['meeting room', 'classroom', 'tutorial room', 'lecture room']
+const BOOKED = ['meeting room', 'classroom', 'tutorial room', 'teaching hall']
 
 const enough = (room: DigestRoom) => room.standing === 'enough' || room.standing === 'enough, just'
 
