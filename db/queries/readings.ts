@@ -43,7 +43,7 @@ export async function readRoomSeries(
   const line = async (finest?: number) => {
     const { source, bucket } = read(room, { fromS, toS }, stretches, finest)
     const { rows } = await tx.execute<Bucket>(sql`
-      SELECT sum(n)::int AS n, min(lo) AS lo, max(hi) AS hi, 
+      SELECT sum(n)::int AS n, min(lo) AS lo, max(hi) AS hi,
         (array_agg(t - apart_s ORDER BY lo, t))[1] AS lo_at, (array_agg(t + apart_s ORDER BY hi DESC, t))[1] AS hi_at
       FROM ${source} GROUP BY ${bucket} ORDER BY min(t)`)
     return rows

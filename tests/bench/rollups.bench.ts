@@ -22,6 +22,7 @@ const days = wholeNumber('days', chosen.days, 1)
 const points = wholeNumber('points', chosen.points, 20)
 const repeats = wholeNumber('repeats', chosen.repeats, 1)
 
+const BATCH_ROWS = 20_000
 const TO_S = Date.parse('2026-11-30T09:02:00Z') / 1000
 const FROM_S = TO_S - days * 86_400
 
@@ -105,8 +106,6 @@ function measureSteady(): Promise<Times> {
     )
   })
 }
-
-const BATCH_ROWS = 20_000
 
 /** A backup of the whole, and batches of the retention job. */
 async function measureKeeping() {
