@@ -1,7 +1,8 @@
 /** One plain sentence for each result, in the product's words. */
 import type { Decay, Mode, Reason } from '@/lib/air/types'
 
-const REASON_WORDS: Record<Reason, string> = {
+/** Each reason in plain words, as it stands after "because". */
+export const REASON_WORDS: Readonly<Record<Reason, string>> = {
   'start-too-low': 'the room had too little CO2 above its background to tell a rate',
   'too-short': 'the room stayed empty for too short a time',
   'too-few-points': 'there are too few readings',
