@@ -10,16 +10,25 @@ const LINE_RESOLUTIONS_S = [3600, 900, 300] as const
 
 type Span = { fromS: number; toS: number }
 
-/** `rolledToS`: epoch seconds up to which a building's readings are rolled up, −Infinity where they are not or it is not in scope. */
-export type RollupState = { rolledToS: number; hasOffsets: boolean }
+/**
+ * `rolledToS`: epoch seconds up to which a building's readings are rolled up, −Infinity where they are not or it is not in scope; `keptSinceS`:
+ * from when on its organisation keeps the readings themselves, −Infinity where it says nothing.
+ */
+export type RollupState = { rolledToS: number; keptSinceS: number; hasOffsets: boolean }
 
 /** How far a building's roll-ups reach, and whether any of its sensors has a correction at all: most have none, and a join less is much faster. */
 export async function rollupState(tx: Tx, { buildingId }: { buildingId: number }): Promise<RollupState> {
-  const { rows } = await tx.execute<{ s: number | null; corrected: boolean }>(sql`
+  const { rows } = await tx.execute<{ s: number | null; kept: number | null; corrected: boolean }>(sql`
     SELECT (SELECT extract(epoch from rolled_to)::float8 FROM rollup_progress WHERE building_id = ${buildingId}) AS s,
+      (SELECT extract(epoch from now() - make_interval(days => g.readings_kept_days))::float8 FROM organizations g JOIN buildings b ON b.organization_id = g.id
+       WHERE b.id = ${buildingId}) AS kept,
       EXISTS (SELECT FROM sensor_offsets o JOIN sensors s ON s.id = o.sensor_id WHERE s.building_id = ${buildingId}) AS corrected`)
   const row = rows[0]
-  return { rolledToS: row?.s ?? Number.NEGATIVE_INFINITY, hasOffsets: row?.corrected ?? true }
+  return {
+    rolledToS: row?.s ?? Number.NEGATIVE_INFINITY,
+    keptSinceS: row?.kept ?? Number.NEGATIVE_INFINITY,
+    hasOffsets: row?.corrected ?? true,
+  }
 }
 
 /** The coarsest roll-up, seconds, that a stretch of a chart holds whole; null where only readings are fine enough. */
@@ -71,20 +80,24 @@ export function sourceOf({
   toS,
   stretchS,
   rolledToS,
+  keptSinceS,
   hasOffsets,
 }: Span & RollupState & { which: SQL; stretchS: number }): SQL {
-  const resolutionS = resolutionFor(stretchS)
+  // where readings are deleted by policy the finest roll-ups stand in, however short the stretch
+  const isPartlyGone = fromS < keptSinceS
+  const resolutionS = resolutionFor(stretchS) ?? (isPartlyGone ? FINEST_ROLLUP_S : null)
   const [wholeFromS, wholeToS] =
     resolutionS === null ? [toS, toS] : covered({ fromS, toS }, resolutionS, rolledToS)
+  // date_part and not extract, which makes a numeric of every instant: a third of a year's chart
   const readings = (from: number, to: number) => sql`
-    SELECT extract(epoch from v.at)::float8 AS t, c AS lo, c AS mid, c AS hi, 1 AS n, 0::float8 AS apart_s
+    SELECT date_part('epoch', v.at) AS t, c AS lo, c AS mid, c AS hi, 1 AS n, 0::float8 AS apart_s
     FROM visible_readings v
     ${offsetAt('v.at', hasOffsets)}
     CROSS JOIN LATERAL (SELECT (v.co2_ppm + coalesce(o.offset_ppm, 0))::float8 AS c) AS corrected
     WHERE ${which} AND v.at >= to_timestamp(${from}) AND v.at < to_timestamp(${to})`
   if (resolutionS === null || wholeToS <= wholeFromS) return sql`(${readings(fromS, toS)}) AS points`
   const rollups = sql`
-    SELECT extract(epoch from v.start)::float8 + v.resolution_s / 2.0::float8 AS t, v.lowest_ppm + f AS lo, v.mean_ppm + f AS mid, v.highest_ppm + f AS hi, v.count AS n,
+    SELECT date_part('epoch', v.start) + v.resolution_s / 2.0::float8 AS t, v.lowest_ppm + f AS lo, v.mean_ppm + f AS mid, v.highest_ppm + f AS hi, v.count AS n,
       v.resolution_s / 4.0::float8 AS apart_s
     FROM visible_rollups v
     ${offsetAt('v.start', hasOffsets)}

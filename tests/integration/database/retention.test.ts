@@ -4,6 +4,7 @@ import path from 'node:path'
 import { gunzipSync } from 'node:zlib'
 import { sql } from 'drizzle-orm'
 import { afterAll, beforeAll, expect, it } from 'vitest'
+import { readRoomSeries } from '@/db/queries/readings'
 import { longestKept, rollupsKept } from '@/ingest/nightly/retention/policy'
 import { type RetainOptions, retain } from '@/ingest/nightly/retention/retain'
 import { rollUp } from '@/ingest/nightly/roll-up'
@@ -121,6 +122,16 @@ it('deletes one organisation’s readings past its period in batches, roll-ups l
     { o: short.organizationId, action: 'readings.deleted', rows: 1000 + rest.readings },
     { o: short.organizationId, action: 'rollups.deleted', rows: 1000 + rest.rollups },
   ])
+})
+
+it('draws a span whose readings are partly deleted from the roll-ups that are left', async () => {
+  const [fromS, toS] = [daysAgo(62).getTime() / 1000, daysAgo(58).getTime() / 1000]
+  const { id: roomId } = short.rooms[0]!
+  const series = await test.database.asSystem('test', (tx) =>
+    // so many points that each stretch is shorter than the finest roll-up
+    readRoomSeries(tx, { roomId, buildingId: short.buildingId, fromS, toS, points: 8000 }),
+  )
+  expect(series.points).toHaveLength(4 * 24)
 })
 
 it('drops months past the longest period of all, each first as a compressed file that holds every row', async () => {
