@@ -9,6 +9,7 @@ import { type Judgement, judge } from '../support/truth/judge'
 import { textbook } from '../support/truth/rivals/textbook'
 import { toldWindow } from '../support/truth/rivals/told-window'
 import { type Summary, summarise } from '../support/truth/summary'
+import { printDoubts, weighDoubts } from './doubts'
 import { findingsOf } from './findings'
 import { options, percent, printTable, wholeNumber, writeReport } from './report'
 
@@ -139,6 +140,9 @@ ans: evenings with a real decay that got an accepted figure; any: or a doubtful 
 evening's figure; mid: of all figures, mid-day ones too. cov: 95 % intervals that hold the truth; ±: median half width. false:
 accepted with people inside or two rates mixed, and more than 20 % off; gross: accepted and more than 20 % off; none: accepted
 where nothing decays; night: wrong local date; bounds, outd.: bounds or ranges, and outdoor ranges, that hold / were given.`)
+const doubts = weighDoubts(all.Ebbmark)
+console.log('\nwhat doubt holds back, in rooms without a neighbour')
+printDoubts(doubts)
 const ratio = (key: 'medianError' | 'p90Error') => ({
   toTextbook: pooled.Ebbmark![key] / pooled.textbook![key],
   toToldWindow: pooled.Ebbmark![key] / pooled['told window']![key],
@@ -150,6 +154,7 @@ writeReport('inference', {
   analyseSeconds,
   ratios: { medianError: ratio('medianError'), p90Error: ratio('p90Error') },
   pooled,
+  doubts,
   firstSeven: Object.fromEntries(WAYS.map((way) => [way, summarise(seven[way])])),
   classes: figures,
 })

@@ -22,3 +22,6 @@ export type Answer = {
 }
 
 export const secondsOf = (iso: string) => Date.parse(iso) / 1000
+
+/** Reasons that only say what air it is: they go with accepted figures too. */
+export const REASONS_THAT_INFORM: readonly string[] = ['recirculation-possible', 'neighbour-coupled']

@@ -1,4 +1,4 @@
-import { type Answer, secondsOf } from './answer'
+import { type Answer, REASONS_THAT_INFORM, secondsOf } from './answer'
 import type { TruthBuilding, TruthRoom } from './building'
 import { localDate } from './calendar'
 import { describe, type EmptySpell, type Interval } from './record'
@@ -82,18 +82,13 @@ function trueTime(room: TruthRoom, clockS: number): number {
 /** Air from a neighbour that nobody measures, and the answer says so: outdoor and total cannot be told apart. */
 function unknowable(room: TruthRoom, answer: Answer): boolean {
   if (!room.draft.neighbour || room.draft.neighbour.measured) return false
-  return (
-    answer.outdoor_ach_low != null ||
-    answer.reasons.some((r) => r === 'neighbour-coupled' || r === 'recirculation-possible')
-  )
+  return answer.outdoor_ach_low != null || answer.reasons.some((r) => REASONS_THAT_INFORM.includes(r))
 }
 
 /** The rate that `ach` names: total replacement by lower-CO2 air where the room draws on a known neighbour or on return air. */
 function referenceRate(room: TruthRoom, truth: Interval, answer: Answer): number {
   if (!room.draft.neighbour) return truth.outdoorPerHour
-  const saysSo =
-    answer.outdoor_ach_low != null ||
-    answer.reasons.some((r) => r === 'neighbour-coupled' || r === 'recirculation-possible')
+  const saysSo = answer.outdoor_ach_low != null || answer.reasons.some((r) => REASONS_THAT_INFORM.includes(r))
   if (!saysSo) return truth.outdoorPerHour
   if (!unknowable(room, answer)) return truth.totalPerHour
   // any figure between the two is a fair dilution rate; whether an interval holds it is then no question
