@@ -21,14 +21,10 @@ export async function deleteOldReadings(tx: Tx, batch: Batch): Promise<number> {
 /** Deletes roll-ups of an organisation from before an instant, `atMost` of them, as deleteOldReadings does with readings. */
 export async function deleteOldRollups(tx: Tx, batch: Batch): Promise<number> {
   const { organizationId, before, atMost } = batch
-  const deleted = await tx.execute(sql`
-    WITH old AS (
-      SELECT u.sensor_id, u.resolution_s, u.start FROM sensors s CROSS JOIN unnest('{300,900,3600,86400}'::int[]) AS resolution
-      CROSS JOIN LATERAL (SELECT x.sensor_id, x.resolution_s, x.start FROM reading_rollups x
-        WHERE x.sensor_id = s.id AND x.resolution_s = resolution AND x.start < ${before} LIMIT ${atMost}) AS u
-      WHERE s.organization_id = ${organizationId} LIMIT ${atMost})
-    DELETE FROM reading_rollups d USING old WHERE d.sensor_id = old.sensor_id AND d.resolution_s = old.resolution_s AND d.start = old.start`)
-  const gone = deleted.rowCount ?? 0
+  const { rows } = await tx.execute<{ gone: number }>(
+    sql`SELECT delete_old_rollups(${organizationId}, ${before}, ${atMost}) AS gone`,
+  )
+  const gone = rows[0]?.gone ?? 0
   await tellOf(tx, 'rollups.deleted', batch, gone)
   return gone
 }
