@@ -37,10 +37,12 @@ const keepAliveS = 30
 const openWithinMs = 10_000
 /** Larger packets are not sent by the broker (MQTT 5), or end the connection. */
 const packetMaxBytes = 4 * 1024 * 1024
-/** Unacknowledged payloads from which on the socket is not read any more. */
-const bytesMax = 32 * 1024 * 1024
-/** After a resumed session, arrivals count as held until half of the window has been free for this long. */
+/** Unacknowledged payloads from which on the socket is not read any more: some ten batches, whatever the size of a message. */
+const bytesMax = 4 * 1024 * 1024
+/** After a resumed session, arrivals count as held for this long at least, and until half of the window has been free for as long. */
 const backlogOverMs = 2000
+/** A broker of MQTT 3.1.1 has a window of its own: there, until nothing comes for a moment, or for this long. */
+const backlogMostMs = 60_000
 
 /** One connection to a broker: connects, subscribes, hands on what comes, acknowledges in order. It does not come again by itself. */
 export class Connection {
@@ -59,6 +61,7 @@ export class Connection {
   #isTaking = true
   #lastHeardMs = performance.now()
   #busyMs = performance.now()
+  #lastPublishMs = 0
 
   constructor(options: ConnectionOptions) {
     this.#options = options
@@ -183,23 +186,31 @@ export class Connection {
       this.#end(isOlderBroker(code) ? new OlderBroker(why) : new Error(why))
       return
     }
-    const { filter, receiveMaximum } = this.#options
+    const { filter } = this.#options
     this.#sessionPresent = packet.sessionPresent
     this.#isHeld = packet.sessionPresent
     const aliveS = packet.properties?.serverKeepAlive ?? keepAliveS
     if (aliveS > 0) this.#stayAlive(aliveS * 1000)
-    this.#timers.push(
-      setInterval(() => {
-        if (this.outstanding > receiveMaximum / 2) this.#busyMs = performance.now()
-        if (performance.now() - this.#busyMs > backlogOverMs) this.#isHeld = false
-      }, 200),
-    )
+    const sinceMs = performance.now()
+    this.#timers.push(setInterval(() => this.#watchBacklog(sinceMs), 200))
     const { drains, formerFilter } = this.#options
     if (drains) this.#send({ cmd: 'unsubscribe', messageId: 1, unsubscriptions: [filter] })
     else this.#send({ cmd: 'subscribe', messageId: 1, subscriptions: [{ topic: filter, qos: 1 }] })
     // after the subscription, so that no message falls between the two
     if (formerFilter !== undefined && packet.sessionPresent)
       this.#send({ cmd: 'unsubscribe', messageId: 2, unsubscriptions: [formerFilter] })
+  }
+
+  /** Says when what the broker had kept has come, as far as can be told. */
+  #watchBacklog(sinceMs: number): void {
+    const { version, receiveMaximum } = this.#options
+    const nowMs = performance.now()
+    const isFull = this.outstanding > receiveMaximum / 2 || this.#acks.outstandingBytes > bytesMax / 2
+    if (isFull) this.#busyMs = nowMs
+    const isQuiet = this.outstanding === 0 && nowMs - this.#lastPublishMs > 150
+    const hasRoom = version === 5 && nowMs - this.#busyMs > backlogOverMs
+    const isLong = version === 4 && nowMs - sinceMs > backlogMostMs
+    if (nowMs - sinceMs > backlogOverMs && (isQuiet || hasRoom || isLong)) this.#isHeld = false
   }
 
   #takeSuback(packet: ISubackPacket): void {
@@ -220,6 +231,7 @@ export class Connection {
 
   #takePublish(packet: IPublishPacket): void {
     if (!this.#isTaking) return
+    this.#lastPublishMs = performance.now()
     const payload = typeof packet.payload === 'string' ? Buffer.from(packet.payload) : packet.payload
     const { topic, retain, dup, messageId } = packet
     const message = { topic, payload, retain, held: dup || retain || this.#isHeld }

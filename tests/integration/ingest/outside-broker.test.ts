@@ -168,6 +168,33 @@ describe('an outside broker', () => {
     ).toBe(302)
   })
 
+  it('takes a queue of large messages at its own pace: more than it may hold at once, none given back', async () => {
+    const broker = await mosquitto()
+    const url = `mqtt://127.0.0.1:${broker.port}`
+    const sensor = await site.addSensor('lock-large')
+    const first = await worker(url)
+    await says(first, 'subscribed')
+    await first.end('SIGTERM')
+    const client = await connect(url)
+    const note = 'x'.repeat(2000)
+    for (let index = 0; index < 120; index++)
+      await publish(
+        client,
+        sensor.topic,
+        Array.from({ length: 40 }, (_, item) => ({ t: t(-(index * 40 + item)), co2_ppm: 500, note })),
+      )
+    const second = await worker(url)
+    expect(
+      await eventually(
+        () => storedCount([sensor]),
+        (count) => count === 4800,
+        40_000,
+      ),
+    ).toBe(4800)
+    await second.end('SIGTERM')
+    expect(second.output()).toMatch(/"messages":120,.*"droppedMessages":0,.*"msg":"stopped"/)
+  })
+
   it.each([2, 3])('%i workers share the messages: none lost, none worked twice', async (count) => {
     const broker = await mosquitto()
     const url = `mqtt://127.0.0.1:${broker.port}`
