@@ -3,7 +3,7 @@ import fs from 'node:fs'
 import os from 'node:os'
 import path from 'node:path'
 import fc from 'fast-check'
-import { describe, expect, it } from 'vitest'
+import { afterAll, describe, expect, it } from 'vitest'
 import { keyOfFile, seal, unseal } from '@/lib/server/seal'
 
 const key = randomBytes(32)
@@ -40,6 +40,7 @@ describe('sealed text', () => {
 
 describe('the key file', () => {
   const dir = fs.mkdtempSync(path.join(os.tmpdir(), 'ebbmark-key-'))
+  afterAll(() => fs.rmSync(dir, { recursive: true }))
   it('is made once, for its owner alone', () => {
     const file = path.join(dir, 'inner', 'secret.key')
     const made = keyOfFile(file)
