@@ -99,17 +99,15 @@ async function endEarlierLead(tx: Tx, roomId: number, at: Date): Promise<void> {
     .returning()
   if (!earlier) return
   const { organizationId, buildingId, sensorId, position } = earlier
-  await tx
-    .insert(placements)
-    .values({
-      organizationId,
-      buildingId,
-      sensorId,
-      roomId,
-      position,
-      lead: false,
-      fromAt: earlier.toAt ?? at,
-    })
+  await tx.insert(placements).values({
+    organizationId,
+    buildingId,
+    sensorId,
+    roomId,
+    position,
+    lead: false,
+    fromAt: earlier.toAt ?? at,
+  })
 }
 
 async function requireRoom(tx: Tx, buildingId: number, publicId: string): Promise<number> {
