@@ -6,6 +6,7 @@ import { outdoorLevel } from './decay/background'
 import { cleanRecord } from './decay/clean'
 import { findFalls, levelTrack } from './decay/falls'
 import type { QuietFloor } from './decay/floor'
+import { boundKind } from './decay/judge'
 import {
   type EarlierStop,
   habitualStop,
@@ -16,6 +17,7 @@ import {
 } from './decay/modes'
 import { decayOf, refusedDecay } from './decay/outcome'
 import { peopleProbability } from './decay/people'
+import { contradicted, heldUpLater, unreferenced } from './decay/reference'
 import {
   type DayWindow,
   nightsFloor,
@@ -154,7 +156,12 @@ function finish(day: BuildingDay, prepared: Prepared, seen: SupplyStop[], habit?
   const notes: RoomNote[] = []
   const decays: Decay[] = []
   let used: Background | null = null
-  const weighed = weighPeople(falls, input.room.volumeM3, input.history?.recentRates ?? [])
+  const recent = input.history?.recentRates ?? []
+  const weighed = weighPeople(falls, input.room.volumeM3, recent)
+  const placed = weighed.map((own) => {
+    const mode = modeOf(input.room, own.entry, { supply: input.supply, stops, timeZone: day.timeZone })
+    return { weighed: own, moded: mode, mode: mode.mode, kind: boundKind(own.entry, own.room.record) }
+  })
   const demandToday = weighed.filter(({ entry }) => entry.demand).length
   const demandRoom = demandToday + (input.history?.demandControlled ?? 0) >= 2
   for (const { reading, background, fall, record } of falls) {
@@ -162,9 +169,10 @@ function finish(day: BuildingDay, prepared: Prepared, seen: SupplyStop[], habit?
     const own = reading?.readings ?? []
     if (own.length === 0)
       decays.push(refusedDecay({ day, room: input.room, fall, reading, background, record }))
-    for (const { entry, evidence, before, lonely } of weighed.filter((w) => own.includes(w.entry))) {
+    for (const place of placed.filter((p) => own.includes(p.weighed.entry))) {
+      const { entry, evidence, before, lonely } = place.weighed
       const people = peopleProbability(evidence, before)
-      const mode = modeOf(input.room, entry, { supply: input.supply, stops, timeZone: day.timeZone })
+      const mode = place.moded
       if (mode.disagrees) noteEarlyStop(notes, stops)
       decays.push(
         decayOf({
@@ -181,6 +189,8 @@ function finish(day: BuildingDay, prepared: Prepared, seen: SupplyStop[], habit?
           lonely,
           mild: mildStep(entry, own, stops),
           floorsAgree: opened.floorsAgree,
+          contradicted: contradicted(place, placed, recent),
+          unreferenced: unreferenced(place, placed, recent) || heldUpLater(place, placed),
         }),
       )
     }

@@ -49,6 +49,8 @@ export const GATES = {
   points: 5,
   /** below this many readings in two and a half time constants the start is too uncertain for an accepted figure */
   tellingPoints: 6,
+  /** the same where the fall is broken off early */
+  tellingPointsShort: 8,
   /** a step down by less than this ratio, that no fellow shares, is doubtful */
   mildStep: 2,
   /** residuals this many times the variance that noise and mixing explain speak of something else in the room */
@@ -87,6 +89,21 @@ export const PEOPLE = {
   quietS: 4 * 3600,
   doubtful: 0.04,
   refused: 0.6,
+} as const
+
+/**
+ * A decay held against the room's others (chosen): time constants from which it stands by itself; the ratio beyond both intervals that contradicts
+ * it; how many rates of earlier days are needed and how far such rates scatter; below how many time constants it needs company at all; and until when
+ * people seen after it, with no rise between, count as having stayed, seconds, and how much faster it falls when they have left.
+ */
+export const REFERENCE = {
+  longEnough: 2.2,
+  margin: 1.05,
+  fewest: 3,
+  spread: 0.1,
+  aloneLength: 1.2,
+  heldWithinS: 2 * 3600,
+  faster: 1.2,
 } as const
 
 /** CO2 of one quiet grown person, L/s at room conditions: the smallest source that a test for people must see (Persily and de Jonge 2017, 1.0 met). */

@@ -1,5 +1,5 @@
 /** Gates: which readings of a decay may be given as a figure, with what doubt, or as a bound only. */
-import { GATES, PLAUSIBLE_FLOOR_PPM } from '@/lib/air/constants'
+import { GATES, PLAUSIBLE_FLOOR_PPM, REFERENCE } from '@/lib/air/constants'
 import type { Background, Check, EstimateKind, Quality, Reason } from '@/lib/air/types'
 import { median } from '@/lib/math/robust'
 import { type CleanRecord, type Interval, indexAt } from './clean'
@@ -91,17 +91,15 @@ export function pointsInside(record: CleanRecord, fromS: number, toS: number): n
 }
 
 /** True when the rate is so fast or so slow that only a bound is honest. */
-function boundKind(reading: Reading, record: CleanRecord): EstimateKind {
+export function boundKind(reading: Reading, record: CleanRecord): EstimateKind {
   const { estimate, piece } = reading
   if (reading.demand) return 'range'
   const wide = halfWidth(reading) > GATES.doubtfulHalfWidth
   const falls = (record.stepS / 3600) * estimate.ratePerHour
   const telling = pointsInside(record, reading.fromS, reading.toS)
-  if (
-    falls > 0.9 ||
-    (telling < GATES.tellingPoints && falls > 0.25 && !record.onChange) ||
-    (wide && falls > 0.5)
-  )
+  const long = estimate.ratePerHour * (piece.toH - piece.fromH) > REFERENCE.longEnough
+  const asked = long ? GATES.tellingPoints : GATES.tellingPointsShort
+  if (falls > 0.9 || (telling < asked && falls > 0.25 && !record.onChange) || (wide && falls > 0.5))
     return 'at-least'
   if (wide && estimate.ratePerHour < 0.35 && piece.toH - piece.fromH > 1) return 'at-most'
   return 'fit'

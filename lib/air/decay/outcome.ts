@@ -92,12 +92,17 @@ export type Outcome = {
   lonely: boolean
   /** see RoomRecord */
   floorsAgree: boolean
+  /** slower than another decay of the room in the same mode, see reference.ts */
+  contradicted: boolean
+  /** too short to stand alone, with no other decay of the room to compare */
+  unreferenced: boolean
 }
 
 /** Spread of a neighbour's share up to which the total rate is accepted. */
 const SURE_SHARE = 0.25
 
-function suspicionOf({ room, people, entry, demandRoom, floorsAgree, lonely, mild }: Outcome): Suspicion {
+function suspicionOf(outcome: Outcome): Suspicion {
+  const { room, people, entry, demandRoom, floorsAgree, lonely, mild } = outcome
   const doubts: Reason[] = []
   const refusals: Reason[] = []
   if (room.air === 'recirculating') doubts.push('recirculation-possible')
@@ -106,8 +111,8 @@ function suspicionOf({ room, people, entry, demandRoom, floorsAgree, lonely, mil
   if (demandRoom && !entry.demand) doubts.push('demand-controlled')
   const unsure = entry.coupled ? entry.coupled.shareSd > SURE_SHARE : room.neighbour !== undefined
   if (unsure) doubts.push('neighbour-coupled')
-  if (people > PEOPLE.refused) refusals.push('people-present')
-  else if (people > PEOPLE.doubtful) doubts.push('people-present')
+  if (people > PEOPLE.refused || outcome.contradicted) refusals.push('people-present')
+  else if (people > PEOPLE.doubtful || outcome.unreferenced) doubts.push('people-present')
   return { doubts, refusals, floorsAgree }
 }
 

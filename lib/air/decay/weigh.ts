@@ -5,7 +5,14 @@ import { peopleProbability, rateEvidence, shapeEvidence, unsupported } from './p
 import type { ReadFall } from './room-record'
 import type { Reading } from './run'
 
-export type Weighed = { entry: Reading; room: ReadFall; evidence: number; before: number; lonely: boolean }
+export type Weighed = {
+  entry: Reading
+  room: ReadFall
+  evidence: number
+  before: number
+  lonely: boolean
+  quiet: boolean
+}
 
 /** Weighs for every reading whether the room was empty; rates that are sure help to judge the others. */
 export function weighPeople(
@@ -25,6 +32,7 @@ export function weighPeople(
         evidence,
         before: entry.piece.slowFirst ? PEOPLE.beforeSlow : before,
         lonely: false,
+        quiet,
       }
     })
   })
