@@ -41,16 +41,18 @@ export function useRefit(decay: DecayDetail, window: Window): { refit: Refit; cu
 }
 
 function curveOf(decay: DecayDetail, refit: Refit, { fromS, toS }: Window): Curve | null {
-  const { background, ratePerHour: rate, excessAtStartPpm: excess, startS } = refit
+  const { background, ratePerHour: rate, excessAtStartPpm: excess, startS, middleS, driftPpmPerHour } = refit
   if (background === null || rate === null || excess === null) return null
-  const at = (timeS: number) => background.ppm + excess * Math.exp((-rate * (timeS - startS)) / 3600)
+  // the formula of refitDecay: the background moves while the room ebbs towards it
+  const floorAt = (timeS: number) => background.ppm + (driftPpmPerHour * (timeS - middleS)) / 3600
+  const at = (timeS: number) => floorAt(timeS) + excess * Math.exp((-rate * (timeS - startS)) / 3600)
   const spread = (low: number, high: number) =>
     Array.from({ length: curveSteps + 1 }, (_, i) => low + ((high - low) * i) / curveSteps)
   const timeS = spread(fromS, toS)
   // both ends of the interval turn round the middle of what was fitted, where the level is known best
   const pivotS = fromS + (toS - fromS) / 3
   const turned = (other: number | null) => (t: number) =>
-    background.ppm + (at(pivotS) - background.ppm) * Math.exp((-(other ?? rate) * (t - pivotS)) / 3600)
+    floorAt(t) + (at(pivotS) - floorAt(pivotS)) * Math.exp((-(other ?? rate) * (t - pivotS)) / 3600)
   const edges = timeS.map((t) => [turned(refit.highPerHour)(t), turned(refit.lowPerHour)(t)] as const)
   const inside = decay.series.timeS
     .map((t, i) => [t, decay.series.co2Ppm[i] ?? 0] as const)
