@@ -24,6 +24,8 @@ export type Carried = {
   quietFloors?: Record<string, QuietFloor>
   /** rates of the night that are sure, 1/h */
   sureRates?: Record<string, number[]>
+  /** how many decays of the night showed demand control */
+  demandControlled?: Record<string, number>
   /** with the clock of each stop, seconds after local midnight */
   supplyStops?: Record<string, (SupplyStop & { clockS: number })[]>
   days?: Record<string, DayFacts>

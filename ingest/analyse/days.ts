@@ -1,5 +1,11 @@
 /** Runs the analysis over every local day of a spilled record: first each night's floor, then each day's decays. */
-import { analyseBuildingDay, nightFloor, type RoomHistory, sureRates } from '@/lib/air/analyse-building'
+import {
+  analyseBuildingDay,
+  demandControlledCount,
+  nightFloor,
+  type RoomHistory,
+  sureRates,
+} from '@/lib/air/analyse-building'
 import type { QuietFloor } from '@/lib/air/decay/floor'
 import type { SupplyStop } from '@/lib/air/decay/modes'
 import type { Series } from '@/lib/air/types'
@@ -10,6 +16,8 @@ import type { Spill } from './spill'
 
 /** nights on either side whose floors a day may lean on */
 const FLOOR_NIGHTS = 10
+/** nights back whose demand-controlled decays a room is known by */
+const DEMAND_NIGHTS = 14
 /** the series index of the outdoor sensor */
 export const OUTDOOR_INDEX = -1
 
@@ -58,6 +66,7 @@ export function analyseDays(file: RoomsFile, spill: Spill, hasOutdoor: boolean):
       const history: RoomHistory = {
         quietFloors: floors[index]!.filter(near),
         recentRates: rates[index]!.slice(-12),
+        demandControlled: demands[index]!.slice(-DEMAND_NIGHTS).reduce((sum, count) => sum + count, 0),
       }
       if (room.airHandler !== undefined) history.supplyStops = (stops.get(room.airHandler) ?? []).slice(-14)
       return { room, series: window(spill, index, day), history }
@@ -75,7 +84,7 @@ export function analyseDays(file: RoomsFile, spill: Spill, hasOutdoor: boolean):
     result.forEach((roomDay, index) => {
       for (const decay of roomDay.decays) lines[index]!.push(JSON.stringify(decayRecord(decay)))
       rates[index]!.push(...sureRates(roomDay))
-      demands[index]!.push(roomDay.decays.filter((decay) => decay.kind === 'range').length)
+      demands[index]!.push(demandControlledCount(roomDay))
       const handler = file.rooms[index]!.airHandler
       if (handler === undefined) return
       const kept = stops.get(handler) ?? []

@@ -34,7 +34,7 @@ export type RoomHistory = {
   quietFloors: readonly QuietFloor[]
   /** sure rates of this room from the last nights, 1/h */
   recentRates?: readonly number[]
-  /** decays of the last nights that showed demand control */
+  /** decays of the last nights that showed demand control, see demandControlledCount */
   demandControlled?: number
   /** earlier nights on which this room's air handler was seen to stop, seconds after local midnight */
   supplyStops?: readonly EarlierStop[]
@@ -108,6 +108,11 @@ export function sureRates(day: RoomDay): number[] {
     const long = rate !== null && rate * (decay.endS - decay.startS) > 1.2 * 3600
     return decay.quality === 'accepted' && long ? [rate] : []
   })
+}
+
+/** How many decays of a finished day showed demand control, for later nights to know the room by. */
+export function demandControlledCount(day: RoomDay): number {
+  return day.decays.filter((decay) => decay.kind === 'range' && decay.quality !== 'refused').length
 }
 
 /** Rate drops of every room of one air handler, to be compared. */

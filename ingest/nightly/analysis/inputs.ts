@@ -68,6 +68,7 @@ function historyOf(
   return {
     quietFloors: nights.flatMap((run) => run.carried.quietFloors?.[sensorId] ?? []),
     recentRates: nights.flatMap((run) => run.carried.sureRates?.[sensorId] ?? []).slice(-CARRIED_RATES),
+    demandControlled: nights.reduce((sum, run) => sum + (run.carried.demandControlled?.[sensorId] ?? 0), 0),
     supplyStops: nights.flatMap((run) =>
       (run.carried.supplyStops?.[airHandlerId ?? ''] ?? []).map((stop) => ({
         date: run.localDate,

@@ -1,6 +1,12 @@
 import type { FoundDecay, NightResult } from '@/db/changes/nights'
 import type { Carried } from '@/db/queries/nights'
-import { analyseBuildingDay, type BuildingDay, type RoomDay, sureRates } from '@/lib/air/analyse-building'
+import {
+  analyseBuildingDay,
+  type BuildingDay,
+  demandControlledCount,
+  type RoomDay,
+  sureRates,
+} from '@/lib/air/analyse-building'
 import { DEFAULT_OUTDOOR } from '@/lib/air/constants'
 import { dayFacts, outdoorLevelOf } from './day-facts'
 import { type AnalysedSensor, type NightMaterial, nightInputs } from './inputs'
@@ -23,6 +29,7 @@ function daysOf(day: BuildingDay, sensors: readonly AnalysedSensor[]): NonNullab
 
 function carriedOf(pairs: readonly Pair[], { plan, window }: NightMaterial): Omit<Carried, 'days'> {
   const sureOnes: NonNullable<Carried['sureRates']> = {}
+  const demandControlled: NonNullable<Carried['demandControlled']> = {}
   const quietFloors: NonNullable<Carried['quietFloors']> = {}
   const supplyStops: NonNullable<Carried['supplyStops']> = {}
   const notes: NonNullable<Carried['notes']> = []
@@ -30,6 +37,8 @@ function carriedOf(pairs: readonly Pair[], { plan, window }: NightMaterial): Omi
     if (result.quietFloor) quietFloors[sensor.sensorId] = result.quietFloor
     const rates = sureRates(result)
     if (rates.length > 0) sureOnes[sensor.sensorId] = rates
+    const demand = demandControlledCount(result)
+    if (demand > 0) demandControlled[sensor.sensorId] = demand
     const handler = plan.rooms.find((room) => room.id === sensor.roomId)?.airHandlerId
     if (handler && result.supplyStops.length > 0)
       supplyStops[handler] = result.supplyStops.map((stop) => ({
@@ -38,7 +47,7 @@ function carriedOf(pairs: readonly Pair[], { plan, window }: NightMaterial): Omi
       }))
     notes.push(...result.notes.map((note) => ({ roomId: sensor.roomId, sensorId: sensor.sensorId, ...note })))
   }
-  return { quietFloors, sureRates: sureOnes, supplyStops, notes }
+  return { quietFloors, sureRates: sureOnes, demandControlled, supplyStops, notes }
 }
 
 /** Analyses one night, or gives only the inputs' hash where it is the known one: nothing new to be found. */
