@@ -168,7 +168,9 @@ function finish(day: BuildingDay, prepared: Prepared, seen: SupplyStop[], habit?
     return { weighed: own, moded: mode, mode: mode.mode, kind: boundKind(own.entry, own.room.record) }
   })
   const demandToday = weighed.filter(({ entry }) => entry.demand).length
-  const demandRoom = demandToday + (input.history?.demandControlled ?? 0) >= 2
+  const demandSeen = demandToday + (input.history?.demandControlled ?? 0)
+  // nearly every decay of a demand-controlled room bends; now and then one does anywhere
+  const demandRoom = demandToday >= 2 || demandSeen > Math.max(1, recent.length)
   for (const { reading, background, fall, record } of falls) {
     used ??= background
     const own = reading?.readings ?? []

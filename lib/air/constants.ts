@@ -102,7 +102,7 @@ export const REFERENCE = {
   fewest: 3,
   spread: 0.1,
   aloneLength: 1.2,
-  heldWithinS: 2 * 3600,
+  heldWithinS: 4200,
   faster: 1.2,
 } as const
 

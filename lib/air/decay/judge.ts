@@ -137,9 +137,9 @@ export function judgeReading(
   } else doubts.push(kind === 'at-least' ? 'too-fast' : 'too-slow')
   if (reading.estimate.misfit > GATES.misfit) doubts.push('rate-changing')
   if (!gapCheck) (gap > 0.6 ? refusals : doubts).push('gap')
-  // a false zero cancels where the room's own resting level is the background, and does not where it is not
-  const cancels =
-    background.origin === 'own record' && (suspicion.floorsAgree || background.ppm < PLAUSIBLE_FLOOR_PPM.low)
+  // a false zero cancels where the room's own resting level is the background, that night's or others', and does not where it is not
+  const own = background.origin === 'own record' || background.origin === 'quiet nights'
+  const cancels = own && (suspicion.floorsAgree || background.ppm < PLAUSIBLE_FLOOR_PPM.low)
   if (!floor && !cancels) doubts.push('sensor-suspect')
   if (record.stuck.some((cut) => overlaps(cut, reading.fromS, reading.toS))) doubts.push('sensor-suspect')
   if (record.clockClashes.some((t) => t >= reading.fromS - 3600 && t <= reading.toS)) doubts.push('clock')
