@@ -91,17 +91,22 @@ export const PEOPLE = {
   refused: 0.6,
 } as const
 
-/**
- * A decay held against the room's others (chosen): time constants from which it stands by itself; the ratio beyond both intervals that contradicts
- * it; how many rates of earlier days are needed and how far such rates scatter; below how many time constants it needs company at all; and until when
- * people seen after it, with no rise between, count as having stayed, seconds, and how much faster it falls when they have left.
- */
+/** A decay held against the room's others, because whoever is inside only makes it slower (chosen; lengths in time constants). */
 export const REFERENCE = {
+  /** from here on a decay stands by itself */
   longEnough: 2.2,
+  /** ratio beyond both intervals that contradicts it */
   margin: 1.05,
+  /** how many rates of earlier days are needed, and how far such rates scatter */
   fewest: 3,
   spread: 0.1,
+  /** below this it needs company before the room fills again; and in a quiet evening, where it does not last for hours */
   aloneLength: 1.2,
+  quietLength: 0.5,
+  quietHours: 4,
+  /** how long such company must be */
+  supportingLength: 0.7,
+  /** until when people seen after it, with no rise between, count as having stayed, seconds; and how much faster it then falls without them */
   heldWithinS: 4200,
   faster: 1.2,
 } as const

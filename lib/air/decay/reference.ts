@@ -41,10 +41,17 @@ export function contradicted(own: Placed, all: readonly Placed[], recent: readon
   return quantile(recent, 0.75) * (1 - REFERENCE.spread) > high
 }
 
-/** True when a short decay before the room fills again is the first that this room shows: people inside would look the same. */
+/**
+ * True when no other decay of the room speaks for this one and it is too short to stand alone: people inside would look the same. Before the room
+ * fills again it needs any company at all; in a quiet evening only a very short one does, and then a rate like its own; a slow room's night is long instead.
+ */
 export function unreferenced(own: Placed, all: readonly Placed[], recent: readonly number[]): boolean {
   const { entry, quiet } = own.weighed
-  if (quiet || recent.length > 0 || lengthOf(entry) > REFERENCE.aloneLength) return false
+  const { lowPerHour, highPerHour } = entry.estimate
+  if (lengthOf(entry) > (quiet ? REFERENCE.quietLength : REFERENCE.aloneLength)) return false
+  if (quiet && entry.piece.toH - entry.piece.fromH > REFERENCE.quietHours) return false
+  const near = (rate: number) => rate > lowPerHour / REFERENCE.margin && rate < highPerHour * REFERENCE.margin
+  if (quiet ? recent.some(near) : recent.length > 0) return false
   return !all.some(
     (other) => other !== own && !sameDecay(other.weighed.entry, entry) && supports(other, entry),
   )
@@ -53,7 +60,8 @@ export function unreferenced(own: Placed, all: readonly Placed[], recent: readon
 /** A decay long enough, with nobody seen in it, at a rate that is not above the other's. */
 function supports(other: Placed, entry: Reading): boolean {
   const { evidence, before } = other.weighed
-  const sure = peopleProbability(evidence, before) < PEOPLE.doubtful && other.kind === 'fit'
+  const long = lengthOf(other.weighed.entry) > REFERENCE.supportingLength
+  const sure = long && peopleProbability(evidence, before) < PEOPLE.doubtful && other.kind === 'fit'
   return sure && other.weighed.entry.estimate.lowPerHour < entry.estimate.highPerHour
 }
 
