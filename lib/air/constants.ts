@@ -100,10 +100,10 @@ export const REFERENCE = {
   /** how many rates of earlier days are needed, and how far such rates scatter */
   fewest: 3,
   spread: 0.1,
-  /** below this it needs company before the room fills again; and in a quiet evening, where it does not last for hours */
+  /** below this it needs company before the room fills again; and in a quiet evening; not where it lasts for so many hours */
   aloneLength: 1.2,
   quietLength: 0.5,
-  quietHours: 4,
+  aloneHours: 4,
   /** how long such company must be */
   supportingLength: 0.7,
   /** until when people seen after it, with no rise between, count as having stayed, seconds; and how much faster it then falls without them */

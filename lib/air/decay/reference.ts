@@ -49,7 +49,7 @@ export function unreferenced(own: Placed, all: readonly Placed[], recent: readon
   const { entry, quiet } = own.weighed
   const { lowPerHour, highPerHour } = entry.estimate
   if (lengthOf(entry) > (quiet ? REFERENCE.quietLength : REFERENCE.aloneLength)) return false
-  if (quiet && entry.piece.toH - entry.piece.fromH > REFERENCE.quietHours) return false
+  if (entry.piece.toH - entry.piece.fromH > REFERENCE.aloneHours) return false
   const near = (rate: number) => rate > lowPerHour / REFERENCE.margin && rate < highPerHour * REFERENCE.margin
   if (quiet ? recent.some(near) : recent.length > 0) return false
   return !all.some(
