@@ -22,7 +22,7 @@ async function publish(co2Ppm: number): Promise<void> {
   })
   await client.publishAsync(
     `ebbmark/v1/sallow-mill/${deviceId}/readings`,
-    JSON.stringify({ co2_ppm: co2Ppm }),
+    JSON.stringify({ t: Date.now(), co2_ppm: co2Ppm }),
     { qos: 1 },
   )
   await client.endAsync()

@@ -64,10 +64,16 @@ describe('a room, for the operator', () => {
     await page.getByRole('button', { name: 'Show all of it' }).waitFor({ state: 'detached' })
     await page.getByRole('link', { name: '24 hours' }).click()
     await page.waitForURL(/range=24h/)
-    await page.getByText('Read as a table').first().click()
-    expect(
-      await page.getByRole('table', { name: 'CO2 by stretches of time' }).getByRole('row').count(),
-    ).toBeGreaterThan(12)
+    const rows = page.getByRole('table', { name: 'CO2 by stretches of time' }).getByRole('row')
+    const opened = async () => {
+      // the chart of the other range may still take the place of this one
+      await page
+        .locator('details', { hasText: 'Read as a table' })
+        .first()
+        .evaluate((details) => details.setAttribute('open', ''))
+      return rows.count()
+    }
+    await expect.poll(opened).toBeGreaterThan(12)
     expect(errors).toEqual([])
     await context.close()
   })
@@ -90,7 +96,7 @@ describe('rooms, for the tenant', () => {
     expect(list).toContain('Loom Hall')
     expect(list).not.toContain('Heddle')
     await openRoom(page, 'Loom Hall')
-    expect(await wordsOf(page)).not.toMatch(/air.change|ACH|1\/h|decay/i)
+    expect(await wordsOf(page)).not.toMatch(/air.change|\bACH\b|1\/h|decay/i)
     await openRoom(page, 'Boiler Study')
     const own = await wordsOf(page)
     expect(own).toContain('weekly figures only')
