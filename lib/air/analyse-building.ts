@@ -26,7 +26,7 @@ import {
   type RoomRecord,
   readFalls,
 } from './decay/room-record'
-import { mildStep, weighPeople } from './decay/weigh'
+import { mildStep, type Weighed, weighPeople } from './decay/weigh'
 import type { Background, Decay, RoomSpec, Series, SupplyChange } from './types'
 
 /** What earlier nights left behind for a room. */
@@ -154,6 +154,14 @@ export function analyseBuildingDay(day: BuildingDay): RoomDay[] {
   })
 }
 
+/** Nearly every decay of a demand-controlled room bends; now and then one does anywhere. */
+function isDemandRoom(weighed: readonly Weighed[], history: RoomHistory | undefined): boolean {
+  const today = weighed.filter(({ entry }) => entry.demand).length
+  return (
+    today >= 2 || today + (history?.demandControlled ?? 0) > Math.max(1, history?.recentRates?.length ?? 0)
+  )
+}
+
 function finish(day: BuildingDay, prepared: Prepared, seen: SupplyStop[], habit?: SupplyStop): RoomDay {
   // rooms that slow together today say more than a habit
   const stops = seen.length > 0 || !habit ? seen : [habit]
@@ -164,13 +172,10 @@ function finish(day: BuildingDay, prepared: Prepared, seen: SupplyStop[], habit?
   const recent = input.history?.recentRates ?? []
   const weighed = weighPeople(falls, input.room.volumeM3, recent)
   const placed = weighed.map((own) => {
-    const mode = modeOf(input.room, own.entry, { supply: input.supply, stops, timeZone: day.timeZone })
-    return { weighed: own, moded: mode, mode: mode.mode, kind: boundKind(own.entry, own.room.record) }
+    const moded = modeOf(input.room, own.entry, { supply: input.supply, stops, timeZone: day.timeZone })
+    return { weighed: own, moded, mode: moded.mode, kind: boundKind(own.entry, own.room.record) }
   })
-  const demandToday = weighed.filter(({ entry }) => entry.demand).length
-  const demandSeen = demandToday + (input.history?.demandControlled ?? 0)
-  // nearly every decay of a demand-controlled room bends; now and then one does anywhere
-  const demandRoom = demandToday >= 2 || demandSeen > Math.max(1, recent.length)
+  const demandRoom = isDemandRoom(weighed, input.history)
   for (const { reading, background, fall, record } of falls) {
     used ??= background
     const own = reading?.readings ?? []
@@ -178,9 +183,7 @@ function finish(day: BuildingDay, prepared: Prepared, seen: SupplyStop[], habit?
       decays.push(refusedDecay({ day, room: input.room, fall, reading, background, record }))
     for (const place of placed.filter((p) => own.includes(p.weighed.entry))) {
       const { entry, evidence, before, lonely } = place.weighed
-      const people = peopleProbability(evidence, before)
-      const mode = place.moded
-      if (mode.disagrees) noteEarlyStop(notes, stops)
+      if (place.moded.disagrees) noteEarlyStop(notes, stops)
       decays.push(
         decayOf({
           day,
@@ -189,8 +192,8 @@ function finish(day: BuildingDay, prepared: Prepared, seen: SupplyStop[], habit?
           reading: reading!,
           background,
           record,
-          mode,
-          people,
+          mode: place.moded,
+          people: peopleProbability(evidence, before),
           demandRoom,
           stops,
           lonely,
