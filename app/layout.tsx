@@ -3,7 +3,7 @@ import '@fontsource-variable/atkinson-hyperlegible-next/wght.css'
 import './globals.css'
 import type { Metadata, Viewport } from 'next'
 import { cookies } from 'next/headers'
-import { GlassPatterns } from '@/components/rooms/GlassPatterns'
+import { GlassPatterns } from '@/components/ui/GlassPatterns'
 import { THEME_COOKIE, themeOf } from '@/lib/format/theme'
 
 export const metadata: Metadata = {

@@ -1,4 +1,4 @@
-import { type GlassState, LevelGlass } from './LevelGlass'
+import { type GlassState, LevelGlass } from '@/components/ui/LevelGlass'
 
 const entries: readonly { state: GlassState; level: number; marks?: readonly number[]; words: string }[] = [
   { state: 'in range', level: 0.55, words: 'in range' },

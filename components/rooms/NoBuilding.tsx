@@ -1,5 +1,5 @@
+import { LevelGlass } from '@/components/ui/LevelGlass'
 import { EmptyState } from '@/components/ui/States'
-import { LevelGlass } from './LevelGlass'
 
 /** No building in scope, or a building without rooms: what that means and who can help. */
 export function NoBuilding({ building }: { building: string | null }) {

@@ -1,10 +1,10 @@
 import Link from 'next/link'
 import { cx } from '@/components/ui/cx'
+import { LevelGlass } from '@/components/ui/LevelGlass'
 import { closeWord, tileWords } from '@/lib/format/board'
 import { spaced } from '@/lib/format/counts'
 import { paths } from '@/lib/paths'
 import type { RoomTile as Tile } from '@/lib/wire/live-board'
-import { LevelGlass } from './LevelGlass'
 
 /** The number and its words take silt when over or unusual, deep when near, fog when there is nothing to trust. */
 export function toneOf({ live }: Tile): { number: string; say: string } {

@@ -1,20 +1,14 @@
-import { createHash, randomBytes } from 'node:crypto'
 import { and, eq, isNull, sql } from 'drizzle-orm'
 import { Refusal } from '@/lib/errors'
 import type { SensorForm } from '@/lib/forms/sensor'
 import { deviceIdKey } from '@/lib/wire/topics'
 import type { Tx } from '../client'
+import { deviceSecretSha256, newDeviceSecret } from '../device-secret'
 import { placements, rooms, sensors } from '../schema'
 import { addAuditEvent } from './audit'
 import { notifyLive } from './notice'
 
 type Actor = { organizationId: number; userId: number }
-
-/** A new secret: 128 random bits, shown once; the database keeps its SHA-256. */
-export function newSensorSecret(): { secret: string; sha256: string } {
-  const secret = randomBytes(16).toString('base64url')
-  return { secret, sha256: createHash('sha256').update(secret).digest('hex') }
-}
 
 /**
  * Registers a sensor and places it from `now` on; answers its secret, this once. Refuses a device id that is taken anywhere in the
@@ -25,7 +19,7 @@ export async function registerSensor(
   actor: Actor,
   { buildingId, form, now }: { buildingId: number; form: SensorForm; now: Date },
 ): Promise<{ deviceId: string; secret: string }> {
-  const { secret, sha256 } = newSensorSecret()
+  const secret = newDeviceSecret()
   // a reading without a time counts to the second, and device clocks lag a little: the place begins with the minute
   const fromAt = new Date(Math.floor(now.getTime() / 60_000) * 60_000)
   const roomId = form.roomId === undefined ? null : await requireRoom(tx, buildingId, form.roomId)
@@ -38,7 +32,7 @@ export async function registerSensor(
       deviceId: form.deviceId,
       deviceIdKey: key,
       label: form.label,
-      secretSha256: sha256,
+      secretSha256: deviceSecretSha256(secret),
       intervalS: form.intervalS,
       reporting: form.reporting,
       deadbandPpm: form.deadbandPpm,
@@ -128,10 +122,10 @@ export async function renewSecret(
   actor: Actor,
   { deviceId }: { deviceId: string },
 ): Promise<{ deviceId: string; secret: string }> {
-  const { secret, sha256 } = newSensorSecret()
+  const secret = newDeviceSecret()
   const [sensor] = await tx
     .update(sensors)
-    .set({ secretSha256: sha256 })
+    .set({ secretSha256: deviceSecretSha256(secret) })
     .where(and(eq(sensors.deviceIdKey, deviceIdKey(deviceId)), isNull(sensors.retiredAt)))
     .returning({ deviceId: sensors.deviceId, buildingId: sensors.buildingId })
   if (!sensor)

@@ -1,10 +1,11 @@
 import { OCCUPANCY_CAUTION } from '@/lib/air/supports'
+import { countWord, listed, sentenceCase } from '@/lib/format/counts'
 import { addDays } from '@/lib/time'
 import type { DigestContent, DigestRoom } from '@/lib/wire/digests'
 import { beingDone } from './findings'
 import type { WeekMaterial } from './material'
 import { digestRoom, heldAllDay } from './room'
-import { capital, inWords, list, people, weekInWords } from './words'
+import { people, weekInWords } from './words'
 
 /** Rooms of use by appointment: in these it helps to know how long to leave them empty. */
 const BOOKED = ['meeting room', 'classroom', 'tutorial room', 'teaching hall']
@@ -15,13 +16,13 @@ function titleOf(rooms: readonly DigestRoom[]): string {
   const total = rooms.length
   const short = rooms.filter((room) => room.standing === 'too little').length
   const good = rooms.filter(enough).length
-  const of = `of your ${inWords(total)} rooms`
+  const of = `of your ${countWord(total)} rooms`
   if (total === 1 && good === 1) return 'Your room had enough outdoor air'
   if (total === 1 && short === 1) return 'Your room had too little outdoor air'
-  if (good === total) return `All ${inWords(total)} of your rooms had enough outdoor air`
-  if (short > 0) return `${capital(inWords(short))} ${of} had too little outdoor air`
+  if (good === total) return `All ${countWord(total)} of your rooms had enough outdoor air`
+  if (short > 0) return `${sentenceCase(countWord(short))} ${of} had too little outdoor air`
   if (good === 0) return 'Whether your rooms had enough outdoor air is not proven yet'
-  return `${capital(inWords(good))} ${of} had enough outdoor air, the rest is not proven yet`
+  return `${sentenceCase(countWord(good))} ${of} had enough outdoor air, the rest is not proven yet`
 }
 
 function leadOf(rooms: readonly DigestRoom[]): string[] {
@@ -43,11 +44,11 @@ function leadOf(rooms: readonly DigestRoom[]): string[] {
     ...(worst.length === 0
       ? ['No room was over its limit in the hours in which people use it, as far as its sensor was heard.']
       : [
-          `In the hours in which people use them: ${list(worst.map((room) => `${room.name} ${room.overWords}`))}.`,
+          `In the hours in which people use them: ${listed(worst.map((room) => `${room.name} ${room.overWords}`))}.`,
         ]),
     ...(unproven.length === 0
       ? []
-      : [`Not proven yet: ${list(unproven.map((room) => room.name))}. The list says why for each.`]),
+      : [`Not proven yet: ${listed(unproven.map((room) => room.name))}. The list says why for each.`]),
   ]
 }
 

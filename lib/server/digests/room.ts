@@ -2,10 +2,11 @@ import type { BuildingPlan, PlanRoom } from '@/db/queries/building-plan'
 import type { DayFacts } from '@/db/queries/nights'
 import { purgeTimeS } from '@/lib/air/purge'
 import { glassLevel } from '@/lib/air/room-state'
+import { countWord, listed } from '@/lib/format/counts'
 import { addDays, localDayBounds } from '@/lib/time'
 import type { DigestDay, DigestRoom } from '@/lib/wire/digests'
 import type { WeekMaterial } from './material'
-import { dayState, duration, inWords, list, plainReason, standingOf, weekdayOf } from './words'
+import { dayState, duration, plainReason, standingOf, weekdayOf } from './words'
 
 /** A room that stood at its limit counts as fresh when three quarters of the way back to outdoor air are done. */
 const FRESH_SHARE = 0.75
@@ -49,8 +50,8 @@ function overInWords(
   if (over.length > 0) {
     const named =
       over.length >= 5
-        ? `on ${inWords(over.length)} days`
-        : `on ${list(over.map(({ date }) => weekdayOf(date)))}`
+        ? `on ${countWord(over.length)} days`
+        : `on ${listed(over.map(({ date }) => weekdayOf(date)))}`
     const when = options.namesDays ? named : 'in the week'
     return `over the limit for ${total} ${when}`
   }

@@ -2,25 +2,12 @@ import { NEAR_LEVEL } from '@/lib/air/room-state'
 import type { VerdictCode } from '@/lib/air/verdict-reasons'
 import type { DigestDay, DigestStanding } from '@/lib/wire/digests'
 
-const NUMBERS = 'no one two three four five six seven eight nine ten eleven twelve'.split(' ')
-
-/** A small number as a word, a larger one in figures. */
-export const inWords = (n: number): string => NUMBERS[n] ?? String(n)
-
-export const capital = (text: string): string => text.charAt(0).toUpperCase() + text.slice(1)
-
 /** "3 h 20 min", "45 min", "2 h". */
 export function duration(minutes: number): string {
   const hours = Math.floor(minutes / 60)
   const rest = Math.round(minutes % 60)
   if (hours === 0) return `${rest} min`
   return rest === 0 ? `${hours} h` : `${hours} h ${rest} min`
-}
-
-/** "Monday", "Monday and Tuesday", "Monday, Tuesday and Friday". */
-export function list(words: readonly string[]): string {
-  if (words.length <= 1) return words.join('')
-  return `${words.slice(0, -1).join(', ')} and ${words.at(-1)}`
 }
 
 export const people = (n: number): string => (n === 1 ? 'one person' : `${n} people`)

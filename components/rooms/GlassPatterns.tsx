@@ -1,2 +1,0 @@
-// moved to components/ui with the glass
-export * from '@/components/ui/GlassPatterns'
