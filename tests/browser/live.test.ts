@@ -48,7 +48,9 @@ it('a published reading changes the open tile while the page may fetch nothing',
 it('two tabs of one browser share one stream', async () => {
   const { page, context } = await openPage(browser)
   await signIn(page, 'operator')
+  const leads = page.waitForRequest(/\/api\/v1\/live/)
   await page.goto('/rounds')
+  await leads
   const other = await context.newPage()
   const streams: string[] = []
   other.on('request', (request) => request.url().includes('/api/v1/live') && streams.push(request.url()))
